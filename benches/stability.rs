@@ -1,0 +1,3 @@
+mod support;
+
+fn main() {}

@@ -1,0 +1,13 @@
+//! Samples made fit for analysis: a uniform clock, losses marked as losses, and velocity.
+//!
+//! Nothing is invented here. A row that is not there becomes a missing sample, a derivative next to a
+//! gap is undefined, and what was done is in the result.
+
+mod savitzky_golay;
+mod velocity;
+
+pub use savitzky_golay::SavitzkyGolay;
+pub use velocity::{Velocity, VelocityRule, derivative, velocity};
+
+#[expect(unused_imports, reason = "detectors to come")]
+pub(crate) use velocity::{CentralDifference, FivePoint, Stencil};

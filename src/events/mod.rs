@@ -1,0 +1,1 @@
+//! What moved, and when: events in a trace, each with its measures.

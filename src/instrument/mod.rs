@@ -1,0 +1,1 @@
+//! What the instrument could have seen: precision of a recording.

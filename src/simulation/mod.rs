@@ -1,0 +1,1 @@
+//! Known truth: seeded sessions with known events.

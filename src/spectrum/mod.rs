@@ -1,0 +1,1 @@
+//! How power spreads over frequency: windows, Welch spectra, band power.

@@ -1,0 +1,1 @@
+//! How noise averages down: the Allan family of deviations.

@@ -1,0 +1,1 @@
+//! Was there tremor: band power of the clean stretches between events.
