@@ -9,5 +9,4 @@ mod velocity;
 pub use savitzky_golay::SavitzkyGolay;
 pub use velocity::{Velocity, VelocityRule, derivative, velocity};
 
-#[expect(unused_imports, reason = "detectors to come")]
 pub(crate) use velocity::{CentralDifference, FivePoint, Stencil};

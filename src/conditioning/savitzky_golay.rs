@@ -101,10 +101,14 @@ pub(crate) struct Weighted<'f> {
 }
 
 impl Stencil for Weighted<'_> {
+    fn reach(&self) -> usize {
+        self.filter.reach()
+    }
+
     /// Samples enter as differences (odd derivatives: between mirrored samples; even ones: from the
     /// centre), so that a large offset cancels before it is weighted.
     fn at(&self, x: &[f64], i: usize) -> f64 {
-        let reach = self.filter.reach();
+        let reach = self.reach();
         let Some(window) = i.checked_sub(reach).and_then(|start| x.get(start..=i + reach)) else {
             return f64::NAN;
         };

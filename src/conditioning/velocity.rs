@@ -110,7 +110,15 @@ fn each(x: &[f64], stencil: &impl Stencil) -> Vec<f64> {
 
 /// A local rule that turns samples around `i` into one value; NaN where it is undefined.
 pub(crate) trait Stencil {
+    /// Samples that it needs on either side.
+    fn reach(&self) -> usize;
+
     fn at(&self, x: &[f64], i: usize) -> f64;
+
+    /// Whether the rule would need samples before the first or after the last of `len`.
+    fn reaches_past(&self, len: usize, i: usize) -> bool {
+        i < self.reach() || i + self.reach() >= len
+    }
 }
 
 /// `(x[i+2] + x[i+1] − x[i−1] − x[i−2]) · fs/6`
@@ -125,6 +133,10 @@ impl FivePoint {
 }
 
 impl Stencil for FivePoint {
+    fn reach(&self) -> usize {
+        2
+    }
+
     #[inline(always)]
     fn at(&self, x: &[f64], i: usize) -> f64 {
         // A missing sample makes the sum NaN; the centre is not used. Differences first: a large
@@ -148,6 +160,10 @@ impl CentralDifference {
 }
 
 impl Stencil for CentralDifference {
+    fn reach(&self) -> usize {
+        1
+    }
+
     #[inline(always)]
     fn at(&self, x: &[f64], i: usize) -> f64 {
         match i.checked_sub(1).and_then(|start| x.get(start..start + 3)) {

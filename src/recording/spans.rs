@@ -54,7 +54,13 @@ impl Spans {
     /// All samples `0..len` as one span (none if `len` is zero).
     #[must_use]
     pub fn whole(len: usize) -> Self {
-        if len == 0 { Self::none() } else { Self(std::iter::once(0..len).collect()) }
+        Self::one(0..len)
+    }
+
+    /// The samples of one range (none if it is empty).
+    #[must_use]
+    pub fn one(range: Range<usize>) -> Self {
+        if range.is_empty() { Self::none() } else { Self(std::iter::once(range).collect()) }
     }
 
     /// The maximal runs of `true`.
@@ -118,21 +124,18 @@ impl Spans {
     #[must_use]
     pub fn union(&self, other: &Self) -> Self {
         let (mut a, mut b) = (self.0.iter().peekable(), other.0.iter().peekable());
-        let mut merged: Vec<Range<usize>> = Vec::with_capacity(self.0.len() + other.0.len());
+        let mut merged = Self(Vec::with_capacity(self.0.len() + other.0.len()));
         loop {
             let from_a = match (a.peek(), b.peek()) {
                 (Some(x), Some(y)) => x.start <= y.start,
                 (Some(_), None) => true,
                 (None, Some(_)) => false,
-                (None, None) => return Self(merged),
+                (None, None) => return merged,
             };
             let Some(next) = (if from_a { a.next() } else { b.next() }) else {
-                return Self(merged);
+                return merged;
             };
-            match merged.last_mut() {
-                Some(last) if next.start <= last.end => last.end = last.end.max(next.end),
-                _ => merged.push(next.clone()),
-            }
+            merged.append(next.clone());
         }
     }
 
@@ -180,17 +183,12 @@ impl Spans {
     /// becomes one.
     #[must_use]
     pub fn padded(&self, samples: usize, len: usize) -> Self {
-        let mut wider: Vec<Range<usize>> = Vec::with_capacity(self.0.len());
+        let mut wider = Self(Vec::with_capacity(self.0.len()));
         for range in &self.0 {
-            let padded =
-                range.start.saturating_sub(samples)..range.end.saturating_add(samples).min(len);
-            match wider.last_mut() {
-                Some(last) if padded.start <= last.end => last.end = last.end.max(padded.end),
-                _ => wider.push(padded),
-            }
+            let end = range.end.saturating_add(samples).min(len);
+            wider.append(range.start.saturating_sub(samples)..end);
         }
-        wider.retain(|range| !range.is_empty());
-        Self(wider)
+        wider
     }
 
     /// Each span shorter by `samples` at both ends; what has no sample left is gone.
@@ -207,6 +205,15 @@ impl Spans {
     #[must_use]
     pub fn at_least(&self, samples: usize) -> Self {
         Self(self.0.iter().filter(|range| range.len() >= samples).cloned().collect())
+    }
+
+    /// Adds a range that starts no earlier than the last span; joins it where they touch or overlap.
+    pub(crate) fn append(&mut self, range: Range<usize>) {
+        match self.0.last_mut() {
+            _ if range.is_empty() => {}
+            Some(last) if range.start <= last.end => last.end = last.end.max(range.end),
+            _ => self.0.push(range),
+        }
     }
 
     /// Refuses spans that reach past the `len` samples of a recording.

@@ -9,4 +9,4 @@ mod order;
 pub use moments::{mean, standard_deviation, variance};
 pub use order::{median, median_spread, quantile};
 
-pub(crate) use order::median_by;
+pub(crate) use order::median_over;

@@ -1,5 +1,5 @@
 use crate::input::{contiguous, refuse_infinite};
-use crate::{Error, Result};
+use crate::{Error, Result, Spans};
 use ndarray::ArrayView1;
 
 /// Median of the values that are not missing: the middle one, or the mean of the middle two.
@@ -76,28 +76,29 @@ pub fn median_spread<'a>(v: impl Into<ArrayView1<'a, f64>>) -> Result<f64> {
     refuse_infinite("series", &v)?;
     let middle = median_of(&v).ok_or(Error::AllMissing { what: "series" })?;
     let at = |i: usize| v.get(i).map_or(f64::NAN, |v| v * v);
-    let square = median_by(v.len(), at).ok_or(Error::AllMissing { what: "series" })?;
+    let square =
+        median_over(&Spans::whole(v.len()), at).ok_or(Error::AllMissing { what: "series" })?;
     Ok((square - middle * middle).max(0.0).sqrt())
 }
 
 fn median_of(x: &[f64]) -> Option<f64> {
-    median_by(x.len(), |i| x.get(i).copied().unwrap_or(f64::NAN))
+    median_over(&Spans::whole(x.len()), |i| x.get(i).copied().unwrap_or(f64::NAN))
 }
 
-/// Exact median of `value(0), …, value(len − 1)`, NaN left out; `None` if nothing is left.
+/// Exact median of `value(i)` over the samples `i` of `spans`, NaN left out; `None` if nothing is left.
 ///
 /// The values are computed anew in each pass and never stored: a sample of them brackets the median,
 /// one pass counts what lies outside the bracket and keeps what lies inside, and the middle is selected
-/// there. The counts prove it exact. Should the bracket miss, or hold too much, all values are
-/// collected and selected from.
-pub(crate) fn median_by(len: usize, value: impl Fn(usize) -> f64) -> Option<f64> {
+/// there. The counts prove it exact. Should the bracket miss, all values are collected and selected
+/// from.
+pub(crate) fn median_over(spans: &Spans, value: impl Fn(usize) -> f64) -> Option<f64> {
     const SMALL: usize = 4096;
-    if len > SMALL {
-        if let Some(median) = median_in_bracket(len, &value) {
+    if spans.samples() > SMALL {
+        if let Some(median) = median_in_bracket(spans, &value) {
             return Some(median);
         }
     }
-    let mut all: Vec<f64> = (0..len).map(value).filter(|v| !v.is_nan()).collect();
+    let mut all: Vec<f64> = spans.iter().flatten().map(value).filter(|v| !v.is_nan()).collect();
     let last = all.len().checked_sub(1)?;
     let half = all.len() / 2;
     let (lower_half, &mut high, _) = all.select_nth_unstable_by(half, f64::total_cmp);
@@ -114,12 +115,18 @@ fn middle(low: f64, high: f64) -> f64 {
     if low == high { low } else { low / 2.0 + high / 2.0 }
 }
 
-fn median_in_bracket(len: usize, value: &impl Fn(usize) -> f64) -> Option<f64> {
+fn median_in_bracket(spans: &Spans, value: &impl Fn(usize) -> f64) -> Option<f64> {
+    let len = spans.samples();
     // 1. A strided sample brackets the median by four standard deviations of its rank. The stride is
     //    odd, so that it does not lock to an even period of the signal.
     let stride = (len / (len / 64).clamp(512, 65_536)) | 1;
-    let mut sample: Vec<f64> =
-        (0..len).step_by(stride).map(value).filter(|v| !v.is_nan()).collect();
+    let mut sample = Vec::with_capacity(len / stride + 1);
+    let mut skip = 0;
+    for span in spans.iter() {
+        sample.extend(span.clone().skip(skip).step_by(stride).map(value).filter(|v| !v.is_nan()));
+        let left = span.len().saturating_sub(skip);
+        skip = if left == 0 { skip - span.len() } else { (stride - left % stride) % stride };
+    }
     let half = sample.len() / 2;
     let reach = 2 * (sample.len() as f64).sqrt() as usize + 1;
     sample.sort_unstable_by(f64::total_cmp);
@@ -129,7 +136,7 @@ fn median_in_bracket(len: usize, value: &impl Fn(usize) -> f64) -> Option<f64> {
     // 2. One pass: count what lies outside or on the bracket, keep what lies strictly inside.
     let (mut below, mut on_lower, mut on_upper, mut above) = (0_usize, 0_usize, 0_usize, 0_usize);
     let mut inside = Vec::with_capacity(len / 16);
-    for v in (0..len).map(value) {
+    for v in spans.iter().flatten().map(value) {
         if v > lower && v < upper {
             inside.push(v);
         } else {

@@ -1,0 +1,210 @@
+//! One eye's numbers, by the library; kept for the text, the JSON and the figures.
+
+use crate::json;
+use crate::options::Options;
+use fixational::events::{
+    Detections, DispersionThreshold, Event, MicrosaccadeCriteria, Microsaccades, VelocityThreshold,
+};
+use fixational::instrument::{Precision, precision};
+use fixational::stability::{AveragingTimes, Deviations, Series, Statistic, deviation_over_spans};
+use fixational::statistics::median;
+use fixational::tremor::{StillRatio, Tremor, TremorCriteria};
+use fixational::{Error, Result, Spans, Trace};
+
+/// Probability of the ellipse whose area is reported.
+pub const BCEA_PROBABILITY: f64 = 0.682;
+/// Level of the reported intervals.
+pub const LEVEL: f64 = 0.95;
+
+pub struct Analysis {
+    pub precision: Result<Precision>,
+    pub criteria: MicrosaccadeCriteria,
+    pub microsaccades: Result<Microsaccades>,
+    pub by_velocity: (VelocityThreshold, Detections),
+    pub by_dispersion: (DispersionThreshold, Detections),
+    pub band: TremorCriteria,
+    pub tremor: Result<Tremor>,
+    /// The still eye, by the same criteria, and the ratio to it.
+    pub still_tremor: Option<Result<(Tremor, StillRatio)>>,
+    pub stability: Option<[Deviations; 2]>,
+    pub still_stability: Option<[Deviations; 2]>,
+}
+
+/// All of it. What a recording cannot answer stays as the error that says why; a wrong setting ends
+/// the report.
+pub fn analyse(trace: &Trace, still: Option<&Trace>, options: &Options) -> Result<Analysis> {
+    let mut criteria = MicrosaccadeCriteria::default().lambda(options.lambda);
+    if let Some(seconds) = options.min_duration {
+        criteria = criteria.min_duration(seconds);
+    }
+    let microsaccades = answer(criteria.find(trace))?;
+    let events = microsaccades.as_ref().map_or_else(|_| Spans::none(), Microsaccades::spans);
+
+    let by_velocity = VelocityThreshold::default();
+    let by_dispersion = DispersionThreshold::default();
+    let band = TremorCriteria::default();
+    let tremor = answer(band.measure(trace, &events))?;
+    let still_tremor = match (still, &tremor) {
+        (Some(still), Ok(tremor)) => Some(answer(
+            band.measure(still, &Spans::none())
+                .and_then(|still| Ok((tremor.relative_to(&still)?, still)))
+                .map(|(ratio, still)| (still, ratio)),
+        )?),
+        _ => None,
+    };
+    Ok(Analysis {
+        precision: answer(precision(trace))?,
+        criteria,
+        microsaccades,
+        by_velocity: (by_velocity, by_velocity.find(trace)?),
+        by_dispersion: (by_dispersion, by_dispersion.find(trace)?),
+        band,
+        tremor,
+        still_tremor,
+        stability: stability(trace).ok(),
+        still_stability: still.and_then(|still| stability(still).ok()),
+    })
+}
+
+/// Separates 'this recording cannot say' from 'this was asked wrongly'.
+fn answer<T>(result: Result<T>) -> Result<Result<T>> {
+    match result {
+        Err(error @ Error::Parameter { .. }) => Err(error),
+        other => Ok(other),
+    }
+}
+
+/// Overlapping Allan deviation of each axis at octave times; no difference bridges a gap.
+fn stability(trace: &Trace) -> Result<[Deviations; 2]> {
+    let (present, times) = (trace.present(), AveragingTimes::Octave);
+    let of = |axis| {
+        let statistic = Statistic::OverlappingAllan;
+        deviation_over_spans(axis, &present, trace.rate(), statistic, Series::Level, &times)
+    };
+    Ok([of(trace.x())?, of(trace.y())?])
+}
+
+impl Analysis {
+    pub fn events(&self) -> &[Event] {
+        self.microsaccades.as_ref().map_or(&[], |found| &found.events)
+    }
+
+    /// The blocks of the JSON contract.
+    pub fn blocks(&self, trace: &Trace) -> json::Blocks {
+        json::Blocks {
+            recording: json::Recording {
+                samples: trace.len(),
+                sampling_rate_hz: trace.rate().hertz(),
+                duration_s: trace.duration(),
+                missing_fraction: trace.missing_fraction(),
+            },
+            precision: self.precision_block(),
+            microsaccades: self.microsaccades_block(),
+            velocity_threshold: json::VelocityThreshold {
+                threshold_deg_s: self.by_velocity.0.threshold,
+                min_fixation_s: self.by_velocity.0.min_fixation,
+                fixations: self.by_velocity.1.fixations.len(),
+                saccades: self.by_velocity.1.saccades.len(),
+                median_fixation_s: median_fixation(&self.by_velocity.1),
+            },
+            dispersion_threshold: json::DispersionThreshold {
+                threshold_deg: self.by_dispersion.0.threshold,
+                min_duration_s: self.by_dispersion.0.min_duration,
+                fixations: self.by_dispersion.1.fixations.len(),
+                saccades: self.by_dispersion.1.saccades.len(),
+                median_fixation_s: median_fixation(&self.by_dispersion.1),
+            },
+            tremor: self.tremor_block(),
+            stability: self.stability.as_ref().map(stability_block).unwrap_or_default(),
+        }
+    }
+
+    fn precision_block(&self) -> json::Precision {
+        let measured = self.precision.as_ref().ok();
+        json::Precision {
+            rms_s2s_deg: measured.map(|p| p.rms_s2s.both),
+            sd_deg: measured.map(|p| p.sd.both),
+            bcea_deg2: measured.and_then(|p| p.bcea(BCEA_PROBABILITY).ok()),
+            bcea_probability: BCEA_PROBABILITY,
+        }
+    }
+
+    fn microsaccades_block(&self) -> json::Microsaccades {
+        let found = self.microsaccades.as_ref().ok();
+        let threshold = found.and_then(|found| found.thresholds.first());
+        let rate = found.and_then(|found| found.rate_interval(LEVEL).ok());
+        json::Microsaccades {
+            lambda: self.criteria.lambda,
+            min_samples: found.map_or(0, |found| found.min_samples),
+            threshold_x_deg_s: threshold.map(|threshold| threshold.x),
+            threshold_y_deg_s: threshold.map(|threshold| threshold.y),
+            count: found.map(|found| found.events.len()),
+            rate_hz: rate.map(|rate| rate.value),
+            rate_interval_hz: rate.map(|rate| [rate.lower, rate.upper]),
+            rate_interval_level: LEVEL,
+            events: self.events().iter().map(event_block).collect(),
+            not_found_because: self.microsaccades.as_ref().err().map(ToString::to_string),
+        }
+    }
+
+    fn tremor_block(&self) -> json::Tremor {
+        let tremor = self.tremor.as_ref().ok();
+        let still = self.still_tremor.as_ref().and_then(|still| still.as_ref().ok());
+        json::Tremor {
+            band_hz: [self.band.band.low(), self.band.band.high()],
+            rms_arcmin: tremor.map(|t| t.both.rms_arcmin()),
+            still_rms_arcmin: still.map(|(s, _)| s.both.rms_arcmin()),
+            ratio: still.map(|(_, r)| r.both.rms),
+            x: json::TremorAxis {
+                rms_arcmin: tremor.map(|t| t.x.rms_arcmin()),
+                still_rms_arcmin: still.map(|(s, _)| s.x.rms_arcmin()),
+                ratio: still.map(|(_, r)| r.x.rms),
+            },
+            y: json::TremorAxis {
+                rms_arcmin: tremor.map(|t| t.y.rms_arcmin()),
+                still_rms_arcmin: still.map(|(s, _)| s.y.rms_arcmin()),
+                ratio: still.map(|(_, r)| r.y.rms),
+            },
+            clean_s: tremor.map(|t| t.clean_seconds),
+            segments: tremor.map(|t| t.segments),
+            not_observable: self.tremor.as_ref().err().map(ToString::to_string),
+        }
+    }
+}
+
+fn median_fixation(detections: &Detections) -> Option<f64> {
+    let durations: Vec<f64> = detections.fixations.iter().map(|f| f.duration).collect();
+    median(&durations).ok()
+}
+
+fn event_block(event: &Event) -> json::Microsaccade {
+    let known = |value: f64| value.is_finite().then_some(value);
+    json::Microsaccade {
+        onset_sample: event.samples.start,
+        end_sample: event.samples.end,
+        onset_s: event.onset,
+        duration_s: event.duration,
+        amplitude_deg: known(event.amplitude()),
+        range_amplitude_deg: known(event.range_amplitude()),
+        direction_deg: known(event.direction()),
+        peak_velocity_deg_s: event.peak_velocity,
+        mean_velocity_deg_s: event.mean_velocity,
+        touches_gap: event.touches_gap,
+        touches_end: event.touches_end,
+    }
+}
+
+fn stability_block([x, y]: &[Deviations; 2]) -> json::Stability {
+    let (x, y) = (x.values(), y.values());
+    json::Stability {
+        deviation_deg: both(&x, &y),
+        deviation_x_deg: x,
+        deviation_y_deg: y,
+        tau_s: Vec::new(),
+    }
+}
+
+/// Both axes together: the root of the summed variances.
+pub fn both(x: &[f64], y: &[f64]) -> Vec<f64> {
+    x.iter().zip(y).map(|(x, y)| x.hypot(*y)).collect()
+}
