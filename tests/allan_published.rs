@@ -26,7 +26,9 @@ fn deviations_equal_the_published_tables() {
     let reference = Reference::load("allan_published");
     let mut checked = 0;
     for case in reference.cases("n") {
-        let Some(statistic) = case.params["statistic"].as_str().and_then(statistic) else { continue };
+        let Some(statistic) = case.params["statistic"].as_str().and_then(statistic) else {
+            continue;
+        };
         let Some(name) = case.input["series"].as_str() else { continue };
         let y = numbers(&reference.series(name)["readings"]);
         let rate = SamplingRate::new(1.0 / case.number("tau0")).unwrap();

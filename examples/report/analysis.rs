@@ -2,6 +2,7 @@
 
 use crate::json;
 use crate::options::Options;
+use crate::source::Source;
 use fixational::events::{
     Detections, DispersionThreshold, Event, MicrosaccadeCriteria, Microsaccades, VelocityThreshold,
 };
@@ -26,8 +27,8 @@ pub struct Analysis {
     pub tremor: Result<Tremor>,
     /// The still eye, by the same criteria, and the ratio to it.
     pub still_tremor: Option<Result<(Tremor, StillRatio)>>,
-    pub stability: Option<[Deviations; 2]>,
-    pub still_stability: Option<[Deviations; 2]>,
+    pub stability: Result<[Deviations; 2]>,
+    pub still_stability: Option<Result<[Deviations; 2]>>,
 }
 
 /// All of it. What a recording cannot answer stays as the error that says why; a wrong setting ends
@@ -61,8 +62,8 @@ pub fn analyse(trace: &Trace, still: Option<&Trace>, options: &Options) -> Resul
         band,
         tremor,
         still_tremor,
-        stability: stability(trace).ok(),
-        still_stability: still.and_then(|still| stability(still).ok()),
+        stability: stability(trace),
+        still_stability: still.map(stability),
     })
 }
 
@@ -87,6 +88,24 @@ fn stability(trace: &Trace) -> Result<[Deviations; 2]> {
 impl Analysis {
     pub fn events(&self) -> &[Event] {
         self.microsaccades.as_ref().map_or(&[], |found| &found.events)
+    }
+
+    /// What a reader should know before believing a number.
+    pub fn notes(&self, source: &Source) -> Vec<String> {
+        let mut notes = Vec::new();
+        if let Ok(found) = &self.microsaccades {
+            // The median-based spread of Gaussian noise is 0.6745 standard deviations.
+            let noise = found.threshold.x.max(found.threshold.y) / found.lambda / 0.674490;
+            let threshold = self.by_velocity.0.threshold;
+            if threshold < 4.0 * noise {
+                notes.push(format!(
+                    "{}: velocity noise is {noise:.1} deg/s SD; a velocity threshold of {threshold} \
+                     deg/s lies within it, and its saccades are mostly noise",
+                    source.name
+                ));
+            }
+        }
+        notes
     }
 
     /// The blocks of the JSON contract.
@@ -115,7 +134,7 @@ impl Analysis {
                 median_fixation_s: median_fixation(&self.by_dispersion.1),
             },
             tremor: self.tremor_block(),
-            stability: self.stability.as_ref().map(stability_block).unwrap_or_default(),
+            stability: self.stability.as_ref().ok().map(stability_block).unwrap_or_default(),
         }
     }
 
@@ -131,7 +150,7 @@ impl Analysis {
 
     fn microsaccades_block(&self) -> json::Microsaccades {
         let found = self.microsaccades.as_ref().ok();
-        let threshold = found.and_then(|found| found.thresholds.first());
+        let threshold = found.map(|found| found.threshold);
         let rate = found.and_then(|found| found.rate_interval(LEVEL).ok());
         json::Microsaccades {
             lambda: self.criteria.lambda,
@@ -195,13 +214,8 @@ fn event_block(event: &Event) -> json::Microsaccade {
 }
 
 fn stability_block([x, y]: &[Deviations; 2]) -> json::Stability {
-    let (x, y) = (x.values(), y.values());
-    json::Stability {
-        deviation_deg: both(&x, &y),
-        deviation_x_deg: x,
-        deviation_y_deg: y,
-        tau_s: Vec::new(),
-    }
+    let (tau_s, x, y) = (x.tau(), x.values(), y.values());
+    json::Stability { tau_s, deviation_deg: both(&x, &y), deviation_x_deg: x, deviation_y_deg: y }
 }
 
 /// Both axes together: the root of the summed variances.

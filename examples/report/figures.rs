@@ -24,8 +24,8 @@ pub struct Curve<'a> {
     pub name: &'a str,
     pub axis: Axis,
     pub still: bool,
-    pub x: &'a [f64],
-    pub y: &'a [f64],
+    pub x: Vec<f64>,
+    pub y: Vec<f64>,
 }
 
 /// What a curve is about.

@@ -1,9 +1,9 @@
 //! Where the samples come from: the built-in session, or files; with a sentence for whatever was odd.
 
 use crate::options::{Clock, Options};
-use fixational::conditioning::{MarkerRule, UniformClock, mark_missing};
+use fixational::conditioning::{ClockReport, RateBasis, UniformClock};
 use fixational::interchange::{
-    DelimitedFormat, GazeTable, PositionUnit, TimeUnit, read_bids, read_delimited,
+    BidsOptions, DelimitedFormat, GazeTable, TimeUnit, read_bids_with, read_delimited,
 };
 use fixational::simulation::Session;
 use fixational::{Error, Result, SamplingRate, ScreenGeometry, Trace};
@@ -11,12 +11,14 @@ use std::path::Path;
 
 /// One eye as it will be analysed.
 pub struct Source {
-    /// Whose samples: `left`, `right`, `cyclopean`, or `unknown`.
+    /// Whose samples: `left`, `right`, `cyclopean`, `simulated` or `unknown`.
     pub eye: String,
     /// The file, or what the built-in session is.
     pub name: String,
     pub trace: Trace,
     pub still: Option<Trace>,
+    /// The file's clock at the first sample, s, and its unit; `None` without timestamps.
+    pub clock: Option<(f64, TimeUnit)>,
 }
 
 /// All eyes, and the sentences.
@@ -29,54 +31,180 @@ pub fn load(options: &Options) -> Result<(Vec<Source>, Vec<String>)> {
             name: format!("built-in session, seed {}", options.seed),
             trace: session.recording,
             still: Some(session.still_eye),
+            clock: None,
         };
         return Ok((vec![source], notes));
     };
     let mut sources = Vec::new();
     for (k, path) in std::iter::once(first).chain(&options.second_eye).enumerate() {
+        let mut source = read(path, options, &mut notes)?;
         // One still recording serves both eyes; two serve one each.
-        let still = options.still.get(k).or(options.still.first());
-        let (eye, trace) = read(path, options, &mut notes)?;
-        let still = still.map(|still| read(still, options, &mut notes)).transpose()?;
-        sources.push(Source {
-            eye,
-            name: path.display().to_string(),
-            trace,
-            still: still.map(|(_, trace)| trace),
-        });
+        if let Some(still) = options.still.get(k).or(options.still.first()) {
+            source.still = Some(read(still, options, &mut notes)?.trace);
+        }
+        sources.push(source);
     }
+    notes.dedup();
     Ok((sources, notes))
 }
 
-fn read(path: &Path, options: &Options, notes: &mut Vec<String>) -> Result<(String, Trace)> {
-    let name = path.file_name().map_or_else(String::new, |name| name.to_string_lossy().into_owned());
-    let is_bids = name.ends_with("_physio.tsv") || name.ends_with("_physio.tsv.gz");
-    let mut table = if is_bids {
-        read_bids(path)?
-    } else {
-        let time_unit = match options.time_unit {
-            Clock::S => TimeUnit::Second,
-            Clock::Ms => TimeUnit::Millisecond,
-            Clock::Us => TimeUnit::Microsecond,
-        };
-        let format = DelimitedFormat::default().time_unit(time_unit).unit(options.unit.into());
-        read_delimited(path, &format)?
-    };
+fn read(path: &Path, options: &Options, notes: &mut Vec<String>) -> Result<Source> {
+    let name = path.file_name().map_or_else(String::new, |n| n.to_string_lossy().into_owned());
     let mut note = |sentence: String| notes.push(format!("{name}: {sentence}"));
 
+    let table = read_table(path, &name, options)?;
+    if table.marked_missing > 0 {
+        note(format!("{} samples hold a missing value that was stated", table.marked_missing));
+    }
     if table.half_missing > 0 {
-        note(format!("{} samples had one axis only and count as missing", table.half_missing));
+        note(format!("{} samples have one axis only and count as missing", table.half_missing));
     }
-    for &marker in &options.missing {
-        let lost = mark_missing(&mut table.x, &mut table.y, marker, MarkerRule::EitherAxis)?;
-        note(format!("{} samples at {marker} count as missing", lost.marked));
+    if let Some((marker, count)) = likely_marker(&table, options) {
+        note(format!(
+            "{count} samples are {marker} in both axes; if that stands for a lost sample, say \
+             --missing {marker}"
+        ));
     }
-    if options.missing.is_empty() {
-        suspect_markers(&table, &mut note);
+    if let Some(step) = quantum(&table.x).or_else(|| quantum(&table.y)) {
+        note(format!("positions come in steps of {step} {}", table.unit));
     }
-    suspect_steps(&table, &mut note);
-    to_degrees(&mut table, options)?;
-    let trace = to_trace(&table, options, &mut note)?;
+
+    let table = match (options.pixels_per_degree, screen(options)?) {
+        (Some(scale), _) => table.into_degrees_by_scale(scale)?,
+        (None, Some(screen)) => table.into_degrees_on_screen(&screen)?,
+        (None, None) => table.into_degrees()?,
+    };
+    let (trace, clock) = to_trace(&table, options, &mut note)?;
     let eye = table.eye.map_or_else(|| "unknown".into(), |eye| eye.to_string());
-    Ok((eye, trace))
+    Ok(Source { eye, name: path.display().to_string(), trace, still: None, clock })
+}
+
+fn read_table(path: &Path, name: &str, options: &Options) -> Result<GazeTable> {
+    if name.ends_with("_physio.tsv") || name.ends_with("_physio.tsv.gz") {
+        let mut reading = BidsOptions::default();
+        for &marker in &options.missing {
+            reading = reading.missing_value(marker);
+        }
+        return read_bids_with(path, &reading);
+    }
+    let time_unit = match options.time_unit {
+        Clock::S => TimeUnit::Second,
+        Clock::Ms => TimeUnit::Millisecond,
+        Clock::Us => TimeUnit::Microsecond,
+    };
+    let unit = options.unit.into();
+    let mut format = DelimitedFormat::default().time_unit(time_unit).position_unit(unit);
+    for &marker in &options.missing {
+        format = format.missing_value(marker);
+    }
+    read_delimited(path, &format)
+}
+
+fn screen(options: &Options) -> Result<Option<ScreenGeometry>> {
+    let (Some(width), Some(height), Some(resolution), Some(distance)) = (
+        options.screen_width,
+        options.screen_height,
+        options.screen_resolution,
+        options.screen_distance,
+    ) else {
+        return Ok(None);
+    };
+    let metres = |centimetres: f64| centimetres / 100.0;
+    ScreenGeometry::new([metres(width), metres(height)], resolution, metres(distance)).map(Some)
+}
+
+/// Rows to samples: by the file's clock, or equally spaced where it has none.
+fn to_trace(
+    table: &GazeTable,
+    options: &Options,
+    note: &mut impl FnMut(String),
+) -> Result<(Trace, Option<(f64, TimeUnit)>)> {
+    let asked = options.rate.map(SamplingRate::new).transpose()?;
+    let stated = table.stated_rate.map(SamplingRate::new).transpose()?;
+    match &table.time {
+        Some(time) if !options.ignore_clock => {
+            let mut clock = UniformClock::default();
+            if let Some(rate) = asked {
+                clock = clock.stated_rate(rate);
+            }
+            let (trace, report) = clock.to_trace(time, &table.x, &table.y)?;
+            describe_clock(&report, trace.rate(), stated, note);
+            let unit = table.time_unit.unwrap_or(TimeUnit::Second);
+            Ok((trace, time.first().map(|first| (*first, unit))))
+        }
+        _ => {
+            let rate = asked.or(stated).ok_or(Error::Parameter {
+                name: "--rate",
+                value: f64::NAN,
+                allowed: "a number of hertz: the file has neither timestamps nor a stated rate",
+            })?;
+            Ok((Trace::new(rate, table.x.as_slice(), table.y.as_slice())?, None))
+        }
+    }
+}
+
+fn describe_clock(
+    report: &ClockReport,
+    used: SamplingRate,
+    stated: Option<SamplingRate>,
+    note: &mut impl FnMut(String),
+) {
+    if let Some(stated) = stated {
+        let off = used.hertz() / stated.hertz() - 1.0;
+        if off.abs() > 1e-3 {
+            note(format!(
+                "it calls itself {} Hz, but its clock runs at {:.4} Hz, which is used",
+                stated.hertz(),
+                used.hertz()
+            ));
+        }
+    }
+    if report.basis == RateBasis::Elapsed {
+        note(format!(
+            "the median interval ({:.6} s) does not fit its clock; the rate, {:.4} Hz, is counted \
+             over the whole recording",
+            report.median_interval,
+            used.hertz()
+        ));
+    }
+    if !report.duplicates.is_empty() {
+        note(format!(
+            "{} rows repeat the time before them and are left out",
+            report.duplicates.len()
+        ));
+    }
+    if report.missing > 0 {
+        note(format!(
+            "its clock leaves out {} samples in {} gaps; they count as missing",
+            report.missing,
+            report.gaps.count()
+        ));
+    }
+}
+
+/// A number that often stands for a lost sample, where it fills both axes more than once.
+fn likely_marker(table: &GazeTable, options: &Options) -> Option<(f64, usize)> {
+    let count = |marker: f64| {
+        let same = |v: &f64| (v - marker).abs() < 1e-12;
+        table.x.iter().zip(&table.y).filter(|(x, y)| same(x) && same(y)).count()
+    };
+    [0.0, -32768.0, -1.0, 9999.0]
+        .into_iter()
+        .filter(|marker| !options.missing.contains(marker))
+        .map(|marker| (marker, count(marker)))
+        .find(|(_, count)| *count > 1)
+}
+
+/// The step of a quantised axis: the least difference between neighbouring values, if values repeat
+/// so often that there must be one.
+fn quantum(axis: &[f64]) -> Option<f64> {
+    let mut values: Vec<f64> = axis.iter().copied().filter(|v| v.is_finite()).collect();
+    let all = values.len();
+    values.sort_unstable_by(f64::total_cmp);
+    values.dedup();
+    let steps = values.windows(2).map(|pair| pair[1] - pair[0]);
+    let least = steps.fold(f64::INFINITY, f64::min);
+    // Nine digits: steps of a decimal recorder differ in their last bits.
+    let rounded = (least * 1e9).round() / 1e9;
+    (all > 100 && values.len() * 4 < all && rounded > 0.0 && rounded.is_finite()).then_some(rounded)
 }

@@ -2,88 +2,229 @@
 
 use crate::analysis::{Analysis, BCEA_PROBABILITY, LEVEL, both};
 use fixational::Trace;
-use fixational::statistics::quantile;
+use fixational::events::{BinocularAgreement, Detections, Event};
+use fixational::stability::Deviations;
+use fixational::statistics::{median, quantile};
 use std::fmt::Write;
 
 /// All sections for one eye.
-pub fn sections(title: &str, trace: &Trace, analysis: &Analysis) -> String {
-    let mut out = String::new();
-    let _ = write(&mut out, title, trace, analysis);
-    out
-}
-
-fn write(out: &mut String, title: &str, trace: &Trace, a: &Analysis) -> std::fmt::Result {
-    writeln!(out, "{title}")?;
-    let line = "─".repeat(title.chars().count());
-    writeln!(out, "{line}")?;
-    row(
-        out,
-        "Recording",
+pub fn sections(title: &str, trace: &Trace, a: &Analysis) -> String {
+    let mut page = Page::titled(title);
+    page.row(
+        "recording",
         &format!(
             "{:.1} s, {} samples at {} Hz, {:.2} % missing in {} gaps",
             trace.duration(),
             trace.len(),
-            round(trace.rate().hertz(), 5),
+            digits(trace.rate().hertz(), 6),
             100.0 * trace.missing_fraction(),
             trace.present().complement(trace.len()).count(),
         ),
-    )?;
-
-    match &a.precision {
-        Ok(p) => {
-            row(
-                out,
-                "Precision",
-                &format!(
-                    "RMS of successive differences {}, SD {} (both axes); ratio {:.2}, white noise \
-                     has 1.41",
-                    angle(p.rms_s2s.both),
-                    angle(p.sd.both),
-                    p.rms_s2s.both / p.sd.both,
-                ),
-            )?;
-            if let Ok(area) = p.bcea(BCEA_PROBABILITY) {
-                let share = 100.0 * BCEA_PROBABILITY;
-                row(out, "", &format!("BCEA {} deg² ({share} % of a normal cloud)", round(area, 3)))?;
-            }
-        }
-        Err(error) => row(out, "Precision", &error.to_string())?,
-    }
-    Ok(())
+    );
+    precision(&mut page, a);
+    microsaccades(&mut page, a);
+    fixations(&mut page, a);
+    tremor(&mut page, a);
+    stability(&mut page, a);
+    page.text
 }
 
-/// A name and what is to say about it, wrapped beside it.
-fn row(out: &mut String, name: &str, text: &str) -> std::fmt::Result {
-    const WIDTH: usize = 78;
-    let mut line = String::new();
-    let mut first = name;
-    for word in text.split(' ') {
-        if !line.is_empty() && line.chars().count() + 1 + word.chars().count() > WIDTH {
-            writeln!(out, "{first:<16}{line}")?;
-            (first, line) = ("", String::new());
-        }
-        if !line.is_empty() {
-            line.push(' ');
-        }
-        line.push_str(word);
+/// What two eyes did together.
+pub fn binocular(both: &BinocularAgreement) -> String {
+    let mut page = Page::titled("Both eyes");
+    page.row(
+        "microsaccades",
+        &format!(
+            "{} in both eyes at the same time; {} in the first eye only, {} in the second only",
+            both.events.len(),
+            both.left_only.len(),
+            both.right_only.len(),
+        ),
+    );
+    page.text
+}
+
+/// Sentences about the files and the numbers.
+pub fn notes(notes: &[String]) -> String {
+    let mut page = Page::titled("Notes");
+    for note in notes {
+        page.row("·", note);
     }
-    writeln!(out, "{first:<16}{line}")
+    page.text
+}
+
+fn precision(page: &mut Page, a: &Analysis) {
+    match &a.precision {
+        Err(error) => page.row("precision", &error.to_string()),
+        Ok(p) => {
+            page.row(
+                "precision",
+                &format!(
+                    "sample to sample {} RMS, about the mean {} SD, both axes; ratio {:.2} (white \
+                     noise: 1.41)",
+                    angle(p.rms_s2s.both),
+                    angle(p.sd.both),
+                    p.ratio(),
+                ),
+            );
+            if let Ok(area) = p.bcea(BCEA_PROBABILITY) {
+                page.row("", &format!("BCEA {} deg² at P = {BCEA_PROBABILITY}", digits(area, 3)));
+            }
+        }
+    }
+}
+
+fn microsaccades(page: &mut Page, a: &Analysis) {
+    let found = match &a.microsaccades {
+        Err(error) => return page.row("microsaccades", &format!("not looked for: {error}")),
+        Ok(found) => found,
+    };
+    let rate = found.rate_interval(LEVEL).map_or_else(
+        |_| String::new(),
+        |rate| {
+            let (value, lower, upper) = (rate.value, rate.lower, rate.upper);
+            format!(", {value:.2} a second [{lower:.2}, {upper:.2}]")
+        },
+    );
+    page.row(
+        "microsaccades",
+        &format!(
+            "{}{rate} (λ = {}, at least {} samples; threshold {} and {} deg/s)",
+            found.events.len(),
+            found.lambda,
+            found.min_samples,
+            digits(found.threshold.x, 3),
+            digits(found.threshold.y, 3),
+        ),
+    );
+    if let Some(quartiles) = quartiles(&found.events, Event::amplitude) {
+        page.row("", &format!("amplitude quartiles {}", quartiles.map(angle).join(", ")));
+    }
+    if let Some(quartiles) = quartiles(&found.events, |event| event.peak_velocity) {
+        let speeds = quartiles.map(|speed| digits(speed, 3)).join(", ");
+        page.row("", &format!("peak velocity quartiles {speeds} deg/s"));
+    }
+    let cut = found.events.iter().filter(|event| event.touches_gap || event.touches_end).count();
+    if cut > 0 {
+        page.row("", &format!("{cut} of them touch a gap or an end of the recording"));
+    }
+}
+
+fn quartiles(events: &[Event], measure: impl Fn(&Event) -> f64) -> Option<[f64; 3]> {
+    let values: Vec<f64> = events.iter().map(measure).collect();
+    let at = |q| quantile(&values, q).ok();
+    Some([at(0.25)?, at(0.5)?, at(0.75)?])
+}
+
+fn fixations(page: &mut Page, a: &Analysis) {
+    let say = |found: &Detections| {
+        let durations: Vec<f64> = found.fixations.iter().map(|f| f.duration).collect();
+        let middle = median(&durations)
+            .map_or_else(|_| String::new(), |s| format!(", {} s in the middle", digits(s, 3)));
+        format!("{} fixations{middle}, {} saccades", found.fixations.len(), found.saccades.len())
+    };
+    let (by_velocity, found) = &a.by_velocity;
+    page.row(
+        "fixations",
+        &format!("velocity below {} deg/s: {}", by_velocity.threshold, say(found)),
+    );
+    let (by_dispersion, found) = &a.by_dispersion;
+    page.row("", &format!("dispersion up to {}°: {}", by_dispersion.threshold, say(found)));
+}
+
+fn tremor(page: &mut Page, a: &Analysis) {
+    let name = format!("{}–{} Hz", a.band.band.low(), a.band.band.high());
+    let tremor = match &a.tremor {
+        Err(error) => return page.row(&name, &error.to_string()),
+        Ok(tremor) => tremor,
+    };
+    page.row(
+        &name,
+        &format!(
+            "{} RMS, both axes, in {} s without event or gap ({} segments)",
+            angle(tremor.both.rms()),
+            digits(tremor.clean_seconds, 3),
+            tremor.segments,
+        ),
+    );
+    let still = match &a.still_tremor {
+        None => "no still eye to compare with: this may all be the instrument's noise".into(),
+        Some(Err(error)) => format!("still eye: {error}"),
+        Some(Ok((still, ratio))) => format!(
+            "still eye {} RMS: {:.3} × (horizontal {:.3} ×, vertical {:.3} ×)",
+            angle(still.both.rms()),
+            ratio.both.rms,
+            ratio.x.rms,
+            ratio.y.rms,
+        ),
+    };
+    page.row("", &still);
+}
+
+fn stability(page: &mut Page, a: &Analysis) {
+    let wanted = |[x, y]: &[Deviations; 2]| {
+        let deviations = both(&x.values(), &y.values());
+        let points = x.tau().into_iter().zip(deviations);
+        // About one point a decade.
+        points
+            .step_by(3)
+            .map(|(tau, d)| format!("{} at {} s", angle(d), digits(tau, 2)))
+            .collect::<Vec<_>>()
+            .join(", ")
+    };
+    match &a.stability {
+        Err(error) => page.row("Allan deviation", &error.to_string()),
+        Ok(found) => page.row("Allan deviation", &wanted(found)),
+    }
+    if let Some(Ok(still)) = &a.still_stability {
+        page.row("", &format!("still eye: {}", wanted(still)));
+    }
+}
+
+/// Lines with names on the left and text wrapped on the right.
+struct Page {
+    text: String,
+}
+
+impl Page {
+    fn titled(title: &str) -> Self {
+        let line = "─".repeat(title.chars().count());
+        Self { text: format!("{title}\n{line}\n") }
+    }
+
+    fn row(&mut self, name: &str, text: &str) {
+        const WIDTH: usize = 80;
+        let mut line = String::new();
+        let mut name = name;
+        for word in text.split(' ') {
+            if !line.is_empty() && line.chars().count() + 1 + word.chars().count() > WIDTH {
+                let _ = writeln!(self.text, "{name:<17}{line}");
+                (name, line) = ("", String::new());
+            }
+            if !line.is_empty() {
+                line.push(' ');
+            }
+            line.push_str(word);
+        }
+        let _ = writeln!(self.text, "{name:<17}{line}");
+    }
 }
 
 /// An angle in the unit that a reader would choose.
 fn angle(degrees: f64) -> String {
     match degrees.abs() {
-        size if size >= 1.0 => format!("{}°", round(degrees, 3)),
-        size if size >= 1.0 / 60.0 => format!("{}′", round(60.0 * degrees, 3)),
-        _ => format!("{}″", round(3600.0 * degrees, 3)),
+        size if size >= 1.0 => format!("{}°", digits(degrees, 3)),
+        size if size >= 1.0 / 60.0 => format!("{}′", digits(60.0 * degrees, 3)),
+        _ => format!("{}″", digits(3600.0 * degrees, 3)),
     }
 }
 
-/// `digits` significant digits, without an exponent.
-fn round(value: f64, digits: i32) -> String {
-    if value == 0.0 || !value.is_finite() {
+/// At least `n` significant digits, without an exponent.
+fn digits(value: f64, n: i32) -> String {
+    if value.abs() < f64::MIN_POSITIVE || !value.is_finite() {
         return format!("{value}");
     }
-    let decimals = (digits - 1 - value.abs().log10().floor() as i32).max(0);
-    format!("{value:.*}", decimals as usize)
+    let decimals = (n - 1 - value.abs().log10().floor() as i32).max(0);
+    let text = format!("{value:.*}", usize::try_from(decimals).unwrap_or(0));
+    if text.contains('.') { text.trim_end_matches('0').trim_end_matches('.').into() } else { text }
 }

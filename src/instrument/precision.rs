@@ -297,7 +297,9 @@ mod tests {
         let found = precision(&gap).unwrap();
         assert_eq!((found.pairs, found.samples), (1, 3));
         assert!((found.rms_s2s.x - 0.5).abs() < 1e-15 && (found.data_loss - 0.25).abs() < 1e-15);
-        for lost in [trace(&[], &[]), trace(&[1.0], &[1.0]), trace(&[1.0, nan, 1.0], &[1.0, nan, 1.0])] {
+        for lost in
+            [trace(&[], &[]), trace(&[1.0], &[1.0]), trace(&[1.0, nan, 1.0], &[1.0, nan, 1.0])]
+        {
             assert!(matches!(precision(&lost), Err(Error::TooShort { needed: 2, .. })));
         }
         assert!(precision_over(&gap, &Spans::new([2..9]).unwrap()).is_err());

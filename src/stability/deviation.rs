@@ -298,7 +298,10 @@ mod tests {
         }
         let deviation = (sum / terms as f64).sqrt();
         let tau = m as f64 / 100.0;
-        (if statistic == Statistic::Time { tau * deviation / 3.0_f64.sqrt() } else { deviation }, terms)
+        (
+            if statistic == Statistic::Time { tau * deviation / 3.0_f64.sqrt() } else { deviation },
+            terms,
+        )
     }
 
     proptest! {
