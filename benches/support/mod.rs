@@ -20,7 +20,8 @@ pub fn criterion() -> Criterion {
         .measurement_time(Duration::from_secs(2))
 }
 
-/// Made-up position in degrees: a slow wander, noise of about 0.01°, and a 0.5° step now and then.
+/// Made-up position in degrees: a slow wander, noise of about 0.01°, and up to
+/// 0.5° in twelve samples now and then.
 pub fn gaze(n: usize, seed: u64) -> Vec<f64> {
     let mut state = seed;
     let mut uniform = move || {
@@ -31,14 +32,16 @@ pub fn gaze(n: usize, seed: u64) -> Vec<f64> {
         z = (z ^ (z >> 27)).wrapping_mul(0x94D0_49BB_1331_11EB);
         ((z ^ (z >> 31)) >> 11) as f64 / 9_007_199_254_740_992.0 - 0.5
     };
-    let (mut wander, mut step) = (0.0, 0.0);
+    let (mut wander, mut level, mut slope) = (0.0, 0.0, 0.0);
     (0..n)
         .map(|i| {
             wander += 0.001 * uniform() - 1e-5 * wander;
-            if i % 700 == 699 {
-                step = 0.5 * uniform();
+            match i % 700 {
+                688 => slope = uniform() / 12.0,
+                0 => slope = 0.0,
+                _ => level += slope - 1e-4 * level,
             }
-            wander + step + 0.01 * (uniform() + uniform() + uniform() + uniform())
+            wander + level + 0.01 * (uniform() + uniform() + uniform() + uniform())
         })
         .collect()
 }

@@ -126,9 +126,9 @@ impl<'t> Search<'t> {
     }
 
     fn fixations(&mut self, span: &Range<usize>, mut found: impl FnMut(Range<usize>)) {
-        let samples = self.trace.x().iter().zip(self.trace.y()).enumerate();
+        let part = |axis: &'t [f64]| axis.get(span.clone()).unwrap_or(&[]).iter();
         let mut start = span.start;
-        for (i, (&x, &y)) in samples.take(span.end).skip(span.start) {
+        for (i, (&x, &y)) in span.clone().zip(part(self.trace.x()).zip(part(self.trace.y()))) {
             if x.is_nan() {
                 if i - start >= self.shortest {
                     found(start..i);
@@ -169,19 +169,17 @@ impl<'t> Search<'t> {
                 return start;
             }
         }
-        let (x, y) = (self.trace.x(), self.trace.y());
+        let newest = |axis: &'t [f64]| axis.get(start..=last).unwrap_or(&[]).iter().rev();
         let mut reach = Extremes::NONE;
-        let newest = x.iter().zip(y).enumerate().take(last + 1).skip(start).rev();
-        for (i, (&x, &y)) in newest {
+        for (&x, &y) in newest(self.trace.x()).zip(newest(self.trace.y())) {
             reach = reach.with(x, y);
             if reach.dispersion() > self.threshold {
-                start = i + 1;
                 break;
             }
             self.behind.push(reach);
         }
         self.ahead = Extremes::NONE;
-        start
+        last + 1 - self.behind.len()
     }
 
     fn clear(&mut self) {
@@ -207,12 +205,22 @@ impl Extremes {
 
     fn joined(self, other: Self) -> Self {
         Self {
-            x: (self.x.0.min(other.x.0), self.x.1.max(other.x.1)),
-            y: (self.y.0.min(other.y.0), self.y.1.max(other.y.1)),
+            x: (least(self.x.0, other.x.0), greatest(self.x.1, other.x.1)),
+            y: (least(self.y.0, other.y.0), greatest(self.y.1, other.y.1)),
         }
     }
 
     fn dispersion(self) -> f64 {
         (self.x.1 - self.x.0) + (self.y.1 - self.y.0)
     }
+}
+
+// Plain comparisons: no NaN comes here, and one instruction does them.
+
+fn least(a: f64, b: f64) -> f64 {
+    if b < a { b } else { a }
+}
+
+fn greatest(a: f64, b: f64) -> f64 {
+    if b > a { b } else { a }
 }

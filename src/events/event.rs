@@ -75,7 +75,7 @@ impl Event {
     ) -> Self {
         let rate = trace.rate();
         let (x, y) = (trace.x(), trace.y());
-        let speed = |i: usize| stencil.at(x, i).hypot(stencil.at(y, i));
+        let speed = |i: usize| speed(stencil.at(x, i), stencil.at(y, i));
         let (mut peak, mut sum, mut defined) = (0.0_f64, 0.0, 0_usize);
         for speed in samples.clone().map(speed).filter(|speed| !speed.is_nan()) {
             peak = peak.max(speed);
@@ -120,6 +120,13 @@ pub fn spans_of(events: &[Event]) -> Spans {
         spans.append(event.samples.clone());
         spans
     })
+}
+
+/// `√(vx² + vy²)`, deg/s. The plain root: no velocity is so large or small that its square would not
+/// do, and `hypot` costs ten times as much.
+#[inline(always)]
+pub(super) fn speed(vx: f64, vy: f64) -> f64 {
+    (vx * vx + vy * vy).sqrt()
 }
 
 fn direction([x, y]: [f64; 2]) -> f64 {

@@ -1,3 +1,4 @@
+use super::event::speed;
 use super::{Detections, Event, Fixation};
 use crate::conditioning::{CentralDifference, FivePoint, SavitzkyGolay, Stencil, VelocityRule};
 use crate::input::positive;
@@ -116,7 +117,7 @@ impl VelocityThreshold {
                 let next = if i == span.end {
                     Kind::Undefined
                 } else {
-                    Kind::of(stencil.at(x, i).hypot(stencil.at(y, i)), self.threshold)
+                    Kind::of(speed(stencil.at(x, i), stencil.at(y, i)), self.threshold)
                 };
                 if next == kind {
                     continue;

@@ -93,10 +93,10 @@ fn median_of(x: &[f64]) -> Option<f64> {
 /// from.
 pub(crate) fn median_over(spans: &Spans, value: impl Fn(usize) -> f64) -> Option<f64> {
     const SMALL: usize = 4096;
-    if spans.samples() > SMALL {
-        if let Some(median) = median_in_bracket(spans, &value) {
-            return Some(median);
-        }
+    if spans.samples() > SMALL
+        && let Some(median) = median_in_bracket(spans, &value)
+    {
+        return Some(median);
     }
     let mut all: Vec<f64> = spans.iter().flatten().map(value).filter(|v| !v.is_nan()).collect();
     let last = all.len().checked_sub(1)?;
@@ -112,14 +112,14 @@ pub(crate) fn median_over(spans: &Spans, value: impl Fn(usize) -> f64) -> Option
 
 /// Mean of the middle two, without overflow.
 fn middle(low: f64, high: f64) -> f64 {
-    if low == high { low } else { low / 2.0 + high / 2.0 }
+    if low < high { low / 2.0 + high / 2.0 } else { low }
 }
 
 fn median_in_bracket(spans: &Spans, value: &impl Fn(usize) -> f64) -> Option<f64> {
     let len = spans.samples();
     // 1. A strided sample brackets the median by four standard deviations of its rank. The stride is
     //    odd, so that it does not lock to an even period of the signal.
-    let stride = (len / (len / 64).clamp(512, 65_536)) | 1;
+    let stride = (len / (len / 32).clamp(1024, 65_536)) | 1;
     let mut sample = Vec::with_capacity(len / stride + 1);
     let mut skip = 0;
     for span in spans.iter() {
@@ -134,33 +134,38 @@ fn median_in_bracket(spans: &Spans, value: &impl Fn(usize) -> f64) -> Option<f64
     let upper = *sample.get(half + reach)?;
 
     // 2. One pass: count what lies outside or on the bracket, keep what lies strictly inside.
-    let (mut below, mut on_lower, mut on_upper, mut above) = (0_usize, 0_usize, 0_usize, 0_usize);
-    let mut inside = Vec::with_capacity(len / 16);
-    for v in spans.iter().flatten().map(value) {
-        if v > lower && v < upper {
-            inside.push(v);
-        } else {
-            // A missing value fails all four.
+    let (mut below, mut up_to_lower, mut from_upper, mut above) =
+        (0_usize, 0_usize, 0_usize, 0_usize);
+    let mut inside = Vec::with_capacity(len / 8);
+    for span in spans.iter() {
+        for i in span {
+            let v = value(i);
+            // A missing value fails every comparison.
+            if v > lower && v < upper {
+                inside.push(v);
+            }
             below += usize::from(v < lower);
+            up_to_lower += usize::from(v <= lower);
+            from_upper += usize::from(v >= upper);
             above += usize::from(v > upper);
-            on_lower += usize::from(v == lower);
-            on_upper += usize::from(v == upper && upper > lower);
         }
     }
+    let on_lower = up_to_lower - below;
+    // Where the bracket is a single value, that value is counted once.
+    let on_upper = if upper > lower { from_upper - above } else { 0 };
 
     // 3. Order statistic `rank` of all values, if the bracket holds it.
     let count = below + on_lower + inside.len() + on_upper + above;
-    inside.sort_unstable_by(f64::total_cmp);
-    let order = |rank: usize| {
+    let mut order = |rank: usize| {
         let rank = rank.checked_sub(below)?;
         if rank < on_lower {
             return Some(lower);
         }
         let rank = rank - on_lower;
-        match inside.get(rank) {
-            Some(&v) => Some(v),
-            None => (rank - inside.len() < on_upper).then_some(upper),
+        if rank < inside.len() {
+            return Some(*inside.select_nth_unstable_by(rank, f64::total_cmp).1);
         }
+        (rank - inside.len() < on_upper).then_some(upper)
     };
     let high = order(count / 2)?;
     if count % 2 == 1 { Some(high) } else { Some(middle(order(count / 2 - 1)?, high)) }
