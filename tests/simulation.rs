@@ -177,7 +177,7 @@ fn tremor_has_its_stated_rms_covariance_and_band_share() {
             for lag in [1, 5, 12] {
                 let products: Vec<f64> =
                     axis.iter().zip(&axis[lag..]).map(|(a, b)| a * b).collect();
-                // At most twice the variance at lag zero (Cauchy–Schwarz on Bartlett's sum).
+                // Bartlett's variance at any lag is at most that at lag zero.
                 within_five("tremor lag", mean(&products), gamma(lag), error);
             }
         }
