@@ -1,6 +1,8 @@
 //! A whole session beside the bare draws that it is made of: per sample and axis one normal number for the
 //! drift, two for the tremor, one for the recording's noise and one for the still eye's.
 
+#![expect(clippy::expect_used, reason = "a bench that cannot be set up has nothing to time")]
+
 mod support;
 
 use criterion::{Criterion, criterion_group, criterion_main};

@@ -1,6 +1,8 @@
 //! Each part of a simulated session against its stated process. Tolerances are five standard errors,
 //! worked out beside each check (false alarm 6e-7 a check; the seeds are fixed).
 
+#![expect(clippy::unwrap_used, clippy::indexing_slicing, reason = "a test that panics has failed")]
+
 use fixational::simulation::{
     Blinks, Drift, Instrument, Microsaccades, SaccadeShape, Session, Tremor, Truth,
 };
@@ -177,7 +179,7 @@ fn tremor_has_its_stated_rms_covariance_and_band_share() {
             for lag in [1, 5, 12] {
                 let products: Vec<f64> =
                     axis.iter().zip(&axis[lag..]).map(|(a, b)| a * b).collect();
-                // At most twice the variance at lag zero (Cauchy–Schwarz on Bartlett's sum).
+                // Bartlett's variance at any lag is at most that at lag zero.
                 within_five("tremor lag", mean(&products), gamma(lag), error);
             }
         }
@@ -578,7 +580,8 @@ const PINNED_COUNTS: (usize, usize) = (87, 13);
 fn settings_out_of_range_are_refused_by_name_and_value() {
     let (s, nan, inf) = (Session::default(), f64::NAN, f64::INFINITY);
     let jumps = Microsaccades::default();
-    let cases: Vec<(&str, Box<dyn Fn(f64) -> Session>, Vec<f64>)> = vec![
+    type With = Box<dyn Fn(f64) -> Session>;
+    let cases: Vec<(&str, With, Vec<f64>)> = vec![
         ("rate", Box::new(move |v| s.rate(v)), vec![0.0, -1.0, 0.5, 2e6, nan, inf]),
         (
             "duration",

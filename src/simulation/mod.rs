@@ -14,12 +14,13 @@
 //!
 //! # What is the same everywhere
 //! The same session gives the same bits on every run. Each part draws from a stream of its own of
-//! the `ChaCha8` generator, keyed with the seed, so a change of one part's settings leaves the other
-//! parts' draws alone, and a longer session begins like the shorter one. The draws are the same on every platform. The
+//! the `ChaCha8` generator, keyed with the seed: a change of one part's settings leaves the other
+//! parts' draws alone (only the directions of microsaccades follow gaze, and so the drift), and a longer
+//! session begins like the shorter one. The generator gives the same integers on every platform. The
 //! numbers made of them pass through `exp`, `ln`, `sin` and `cos` of the platform, whose last bits may
-//! differ between platforms; positions then agree to about 1e-12 degrees a minute of session. With a
-//! quantisation step such a last bit can, rarely, move a sample by one step. A new minor version of
-//! this crate may draw in another way.
+//! differ between platforms; positions then differ by rounding alone, and with a quantisation step
+//! such a rounding can, rarely, move a sample by one step. A new minor version of this crate may draw
+//! in another way.
 
 mod blinks;
 mod drift;

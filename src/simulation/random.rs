@@ -60,8 +60,8 @@ impl Draws {
 mod tests {
     use super::*;
 
-    /// First bytes of the ChaCha8 key stream for an all-zero 256-bit key and nonce, 3e 00 ef 2f 89 5f 40
-    /// d6 7f 5b b8 e8 1f 09 a5 a1 (test vectors of the cipher in draft-strombergson-chacha-test-vectors,
+    /// First bytes of the key stream at eight rounds for an all-zero 256-bit key and nonce, 3e 00 ef 2f
+    /// 89 5f 40 d6 7f 5b b8 e8 1f 09 a5 a1 (test vectors of the cipher in draft-strombergson-chacha-test-vectors,
     /// TC1; quoted from memory).
     #[test]
     fn the_generator_is_the_published_cipher() {
