@@ -14,16 +14,16 @@ use crate::{Result, SamplingRate, Trace};
 /// above it otherwise. Steps are normal and stationary; their correlation over `k` samples is `aᵏ`.
 ///
 /// A Brownian drift has power at every frequency, D/(π²f²) an axis: with the default D about 10.5
-/// arcsec rms in 40–100 Hz, twice the default tremor. A persistence of 0.01 s leaves 2.9 arcsec there,
-/// and the same D.
+/// arcsec rms in 40–100 Hz, twice the default tremor. The default persistence of 0.01 s leaves 2.9
+/// arcsec there, and the same D.
 ///
 /// # Example
 /// ```
 /// use fixational::simulation::{Drift, Session};
-/// let smooth = Session::default().drift(Drift::default().diffusion(0.01).persistence(0.01));
+/// let brownian = Session::default().drift(Drift::default().diffusion(0.01).persistence(0.0));
 /// let none = Session::default().drift(Drift::default().diffusion(0.0));
 /// assert!(none.simulate()?.truth.drift.x().iter().all(|&x| x == 0.0));
-/// assert!(smooth.simulate()?.truth.drift.x().iter().any(|&x| x != 0.0));
+/// assert!(brownian.simulate()?.truth.drift.x().iter().any(|&x| x != 0.0));
 /// # Ok::<(), fixational::Error>(())
 /// ```
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -35,15 +35,15 @@ pub struct Drift {
     /// smallest of the fixation SDs 2.1–6.3 arcmin of Putnam et al. 2005; models of vision use about
     /// 100 arcmin²/s (Burak et al. 2010, from memory).
     pub diffusion: f64,
-    /// Time over which a step resembles the next, s; finite, ≥ 0. Default 0: Brownian motion, the
-    /// process that the diffusion coefficient is defined by. Real drift is persistent at short lags
-    /// (Engbert & Kliegl 2004; Roberts et al. 2013).
+    /// Time over which a step resembles the next, s; finite, ≥ 0. Zero is Brownian motion. Default 0.01:
+    /// drift is persistent at lags of 2–20 ms (Engbert & Kliegl 2004; Roberts et al. 2013); the value
+    /// is ours.
     pub persistence: f64,
 }
 
 impl Default for Drift {
     fn default() -> Self {
-        Self { diffusion: 20.0 / 3600.0, persistence: 0.0 }
+        Self { diffusion: 20.0 / 3600.0, persistence: 0.01 }
     }
 }
 
