@@ -206,10 +206,8 @@ fn header(text: &mut Text, path: &Path) -> Result<(String, u64)> {
         if trimmed.is_empty() || trimmed.starts_with(b"#") {
             continue;
         }
-        // A delimiter at an end is a column without a name; a line end is not part of the last name.
-        let header = bytes.strip_suffix(b"\n").unwrap_or(&bytes);
-        let header = header.strip_suffix(b"\r").unwrap_or(header);
-        return match std::str::from_utf8(header) {
+        // A delimiter at an end makes a column without a name; names lose their blanks and line end.
+        return match std::str::from_utf8(&bytes) {
             Ok(header) => Ok((header.to_owned(), line)),
             Err(_) => {
                 let problem = FileError::new(path, FileProblem::NotUtf8).on_line(line);

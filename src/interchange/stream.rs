@@ -7,7 +7,8 @@ use std::fs::File;
 use std::io::{self, BufRead, BufReader, Cursor, ErrorKind, Read};
 use std::path::Path;
 
-/// Longer lines are refused, so that no file can fill the memory with one.
+/// Longer lines are refused once a whole buffer holds no line end, so that no file can fill the memory
+/// with one.
 pub(super) const LONGEST_LINE: usize = 1 << 20;
 
 const BUFFER: usize = 1 << 16;

@@ -17,6 +17,7 @@ fn the_delimiter_is_found_in_the_header() {
         ("t;x;y\n0;1.5;2\n1;n/a;4\n", Delimiter::Semicolon),
         ("t x y\n0 1.5 2\n1 n/a 4\n", Delimiter::Space),
         ("  t    x   y  \n 0  1.5   2\n    1  n/a   4 \r\n", Delimiter::Space),
+        ("t x y\n0 1.5 2\n1 n/a 4\n   \n \n", Delimiter::Space),
         ("t, x, y\r\n0, 1.5, 2\r\n1, n/a, 4", Delimiter::Comma),
         ("\u{feff}\"t\",\"x\",\"y\"\n\"0\",\"1.5\",2\n1,\"\",\" 4 \"\n", Delimiter::Comma),
         ("note;t (s), own;t;x;y\na,b;c;0;1.5;2\n;;1;NA;4\n", Delimiter::Semicolon),

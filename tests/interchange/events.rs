@@ -175,6 +175,13 @@ fn tables_by_other_hands() {
         .row(EventRow::new(10.0, 0.25, "").values([1.5]))
         .row(EventRow::new(5.5, 0.25, "").values([1.5]));
     assert_eq!(events, expected);
+    let path = folder.file("sub-02_physioevents.tsv", "7\tblink\r\n8\tn/a\r\n9\ta saccade");
+    let names = r#"{ "Columns": ["onset", "trial_type"], "OnsetSource": "n/a" }"#;
+    folder.file("sub-02_physioevents.json", names);
+    let events = read_events(&path).unwrap();
+    let kinds: Vec<&str> = events.rows.iter().map(|row| &*row.trial_type).collect();
+    assert_eq!((kinds, events.columns.len()), (vec!["blink", "", "a saccade"], 0));
+    assert!(events.rows.iter().all(|row| row.duration.is_nan()));
 }
 
 #[test]

@@ -133,9 +133,10 @@ fn a_relative_path_climbs_too() {
     folder.file("physio.json", COMPLETE);
     let path = folder.file("beh/sub-01_physio.tsv", "0\t1\t2\n");
     std::fs::create_dir(folder.path().join("beh/deeper")).unwrap();
+    folder.file("beh/sub-01_physio.json", "{}");
     let round = folder.path().join("beh/deeper/../sub-01_physio.tsv");
     let table = read_bids(&round).unwrap();
-    assert_eq!((table.source, table.sidecars.len()), (round, 1));
+    assert_eq!((table.source, table.sidecars.len()), (round, 2)); // each of them once
     // From the working folder, which a test must not change, up to the root and down again.
     let here = std::env::current_dir().unwrap().canonicalize().unwrap();
     let mut relative: PathBuf = here.ancestors().skip(1).map(|_| "..").collect();

@@ -106,6 +106,10 @@ fn a_line_without_an_end_does_not_fill_the_memory() {
         let path = folder.file(TABLE, content);
         assert_says(read_bids(&path), &path, says);
     }
+    // As long as a line may be.
+    let longest = [b"t,x,y,note\n0,1,2,\n1,3,4,".to_vec(), vec![b'n'; (1 << 20) - 6]].concat();
+    let path = folder.file("gaze.txt", longest);
+    assert_eq!(read_delimited(&path, &DelimitedFormat::default()).unwrap().x, [1.0, 3.0]);
     let path = folder.file("gaze.txt", gzip(vec![b'x'; 3 << 20]));
     let says = says.replace("line 2", "line 1");
     assert_says(read_delimited(&path, &DelimitedFormat::default()), &path, &says);
@@ -151,6 +155,16 @@ fn a_stream_that_ends_in_a_row_names_the_line() {
             let says = ", line 3: the gzip stream is damaged or ends early (";
             assert!(error.to_string().contains(says), "{error}");
         }
+        other => panic!("{other:?}"),
+    }
+    // The same lines below a comment and a header.
+    let mut encoder = GzEncoder::new(Vec::new(), Compression::none());
+    encoder.write_all(b"# c\nt\tx\ty\n0\t1\t2\n2\t3\t4\n4\t5.5\t6\n6\t7\t8\n").unwrap();
+    let whole = encoder.finish().unwrap();
+    let middle = whole.windows(3).position(|w| w == b"5.5").unwrap() + 2;
+    let path = folder.file("gaze.txt", &whole[..middle]);
+    match read_delimited(&path, &DelimitedFormat::default()) {
+        Err(Error::File(error)) => assert_eq!((error.line, error.column), (Some(5), None)),
         other => panic!("{other:?}"),
     }
 }
