@@ -1,5 +1,11 @@
 //! Velocity, filters, clocks, losses and medians, each beside a copy or a read.
 
+#![expect(
+    clippy::expect_used,
+    clippy::indexing_slicing,
+    reason = "a bench that cannot be set up has nothing to time"
+)]
+
 mod support;
 
 use criterion::{Criterion, criterion_group, criterion_main};

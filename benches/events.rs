@@ -1,5 +1,7 @@
 //! Detectors beside reading x and y: clean, with gaps, quantised, and the shapes that hurt.
 
+#![expect(clippy::expect_used, reason = "a bench that cannot be set up has nothing to time")]
+
 mod support;
 
 use criterion::{Criterion, criterion_group, criterion_main};
@@ -8,12 +10,14 @@ use fixational::{SamplingRate, Spans, Trace};
 use std::hint::black_box;
 use support::{beside_floor, gaze, quantised, read, sizes, with_gaps};
 
-fn trace(n: usize, shape: fn(Vec<f64>) -> Vec<f64>) -> Trace {
+type Shape = fn(Vec<f64>) -> Vec<f64>;
+
+fn trace(n: usize, shape: Shape) -> Trace {
     let rate = SamplingRate::new(1000.0).expect("a rate");
     Trace::new(rate, shape(gaze(n, 1)), shape(gaze(n, 2))).expect("a trace")
 }
 
-const SHAPES: [(&str, fn(Vec<f64>) -> Vec<f64>); 3] =
+const SHAPES: [(&str, Shape); 3] =
     [("clean", |x| x), ("5 % missing", with_gaps), ("quantised", quantised)];
 
 fn velocity_threshold(c: &mut Criterion) {
@@ -62,8 +66,11 @@ fn microsaccades(c: &mut Criterion) {
 }
 
 fn dispersion_threshold(c: &mut Criterion) {
-    fn ramp(x: Vec<f64>) -> Vec<f64> {
-        (0..x.len()).map(|i| i as f64 * 0.006).collect()
+    fn ramp(mut x: Vec<f64>) -> Vec<f64> {
+        for (i, x) in x.iter_mut().enumerate() {
+            *x = i as f64 * 0.006;
+        }
+        x
     }
     for (label, n) in sizes() {
         for (shape, make) in SHAPES.into_iter().chain([("a ramp, never a fixation", ramp as _)]) {

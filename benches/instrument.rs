@@ -1,5 +1,7 @@
 //! Precision measures beside reading x and y.
 
+#![expect(clippy::expect_used, reason = "a bench that cannot be set up has nothing to time")]
+
 mod support;
 
 use criterion::{Criterion, criterion_group, criterion_main};

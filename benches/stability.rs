@@ -1,5 +1,7 @@
 //! The Allan family beside a copy of the series.
 
+#![expect(clippy::expect_used, reason = "a bench that cannot be set up has nothing to time")]
+
 mod support;
 
 use criterion::{Criterion, criterion_group, criterion_main};

@@ -4,6 +4,8 @@
 //! else it can do. The numbers come from the library's public API alone: `report/analysis.rs` is the part
 //! to copy from.
 
+#![expect(unreachable_pub, reason = "the parts are modules of a program, not of a library")]
+
 #[path = "report/analysis.rs"]
 mod analysis;
 #[path = "report/drawing.rs"]
@@ -25,6 +27,7 @@ use analysis::Analysis;
 use clap::Parser;
 use fixational::Binocular;
 use fixational::events::binocular_events;
+use fixational::interchange::FileProblem;
 use indicatif::{ProgressBar, ProgressStyle};
 use options::Options;
 use source::Source;
@@ -38,8 +41,24 @@ fn main() -> ExitCode {
         Ok(()) => ExitCode::SUCCESS,
         Err(error) => {
             eprintln!("error: {error}");
+            if needs_scale(error.as_ref()) {
+                eprintln!(
+                    "here: --pixels-per-degree N, or --screen-width, --screen-height, \
+                     --screen-resolution and --screen-distance"
+                );
+            }
             ExitCode::FAILURE
         }
+    }
+}
+
+/// Whether the library asks for a scale, which options here can give.
+fn needs_scale(error: &(dyn Error + 'static)) -> bool {
+    match error.downcast_ref() {
+        Some(fixational::Error::File(file)) => {
+            matches!(file.problem, FileProblem::NeedsScale { .. })
+        }
+        _ => false,
     }
 }
 

@@ -1,4 +1,8 @@
 #![cfg_attr(docsrs, feature(doc_cfg))]
+#![cfg_attr(
+    test,
+    expect(clippy::float_cmp, reason = "tests compare exactly what is claimed exact")
+)]
 
 //! Signal processing of fixational eye movements.
 

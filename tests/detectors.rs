@@ -1,6 +1,13 @@
 //! The classic detectors against plain loops from the published definitions
 //! (`tests/reference/detectors.json`): exact indices, and measures to the file's tolerance.
 
+#![expect(
+    clippy::unwrap_used,
+    clippy::expect_used,
+    clippy::panic,
+    reason = "a test that cannot go on has failed"
+)]
+
 mod support;
 
 use fixational::conditioning::{VelocityRule, derivative};

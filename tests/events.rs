@@ -1,5 +1,12 @@
 //! What must hold of every detector whatever the trace: symmetries, gaps, spans, and bad input.
 
+#![expect(
+    clippy::float_cmp,
+    clippy::indexing_slicing,
+    clippy::unwrap_used,
+    reason = "exact values; a test that cannot go on has failed"
+)]
+
 use fixational::events::{
     DispersionThreshold, EllipticThreshold, Event, MicrosaccadeCriteria, VelocityThreshold,
     binocular_events, spans_of,
@@ -265,7 +272,7 @@ fn events_cut_by_a_gap_or_an_end_say_so() {
 /// sample has no displacement, and says that it touches a gap.
 #[test]
 fn an_event_of_one_missing_sample_has_no_amplitude() {
-    let mut x: Vec<f64> = (0..40).map(|i| 0.2 * (i as f64)).collect();
+    let mut x: Vec<f64> = (0..40).map(|i| 0.2 * f64::from(i)).collect();
     x[20] = f64::NAN;
     let y: Vec<f64> = x.iter().map(|x| x * 0.0).collect();
     let found = VelocityThreshold::default().find(&trace(x, y)).unwrap();

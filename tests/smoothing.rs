@@ -1,6 +1,8 @@
 //! Savitzky–Golay weights and filtered series against exact rational arithmetic and SciPy
 //! (`tests/reference/smoothing.json` states both).
 
+#![expect(clippy::unwrap_used, reason = "a test that cannot go on has failed")]
+
 mod support;
 
 use fixational::SamplingRate;

@@ -1,6 +1,8 @@
 //! What every bench shares: sizes, made-up gaze, and a line that sets a method beside its floor.
 
-#![expect(dead_code, reason = "each bench uses its own share of these")]
+#![allow(dead_code, reason = "each bench uses its own share of these, one of them all")]
+#![expect(unreachable_pub, reason = "a module of the benches, not of a library")]
+#![expect(clippy::indexing_slicing, reason = "slices that hold what they are asked for")]
 
 use criterion::{BenchmarkId, Criterion, Throughput};
 use std::hint::black_box;

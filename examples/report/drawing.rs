@@ -45,8 +45,10 @@ pub fn draw(
     if let Ok(tremor) = &a.tremor {
         let still = a.still_tremor.as_ref().and_then(|still| still.as_ref().ok());
         let both = |x: &Spectrum, y: &Spectrum| {
-            let sum: Vec<f64> = x.values.iter().zip(&y.values).map(|(x, y)| x + y).collect();
-            (x.frequencies(), sum)
+            // Without the bins at zero and at half the rate, which hold one side only.
+            let sides = x.frequencies().into_iter().zip(x.values.iter().zip(&y.values));
+            let inner = sides.filter(|(f, _)| *f > 0.0 && *f < x.rate.nyquist());
+            inner.map(|(f, (x, y))| (f, x + y)).unzip()
         };
         let eye = both(&tremor.spectrum_x, &tremor.spectrum_y);
         let still = still.map(|(still, _)| both(&still.spectrum_x, &still.spectrum_y));

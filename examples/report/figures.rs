@@ -95,6 +95,8 @@ pub fn trace(
             .bold_line_style(GREY.mix(0.25))
             .x_desc("time (s)")
             .y_desc(name)
+            .x_label_formatter(&plain)
+            .y_label_formatter(&plain)
             .label_style((FONT, 13))
             .axis_desc_style((FONT, 14))
             .draw()?;
@@ -222,7 +224,7 @@ pub fn allan(path: &Path, title: &str, curves: &[Curve]) -> Drawn {
         .build_cartesian_2d(x.log_scale(), y.log_scale())?;
     mesh(&mut chart, "averaging time (s)", "overlapping Allan deviation (deg)")?;
     draw_curves(&mut chart, curves, true)?;
-    legend(&mut chart, SeriesLabelPosition::UpperRight)?;
+    legend(&mut chart, SeriesLabelPosition::LowerLeft)?;
     root.present()?;
     Ok(())
 }
@@ -296,7 +298,7 @@ where
 /// A number as a reader writes it: plain from a thousandth to ten thousand, else a power.
 fn plain(value: &f64) -> String {
     match value.abs() {
-        0.0 => "0".into(),
+        size if size < 1e-12 => "0".into(),
         size if (1e-3..1e4).contains(&size) => format!("{}", (value * 1e6).round() / 1e6),
         _ => format!("{value:.0e}"),
     }
@@ -315,8 +317,9 @@ fn extent(values: impl Iterator<Item = f64>) -> Range<f64> {
         .fold((f64::INFINITY, f64::NEG_INFINITY), |(l, h), v| (l.min(v), h.max(v)));
     if low < high {
         low..high
-    } else if low == high {
-        let half = if low == 0.0 { 0.5 } else { 0.1 * low.abs() };
+    } else if low.is_finite() {
+        // A single value.
+        let half = if low.abs() > 0.0 { 0.1 * low.abs() } else { 0.5 };
         low - half..low + half
     } else {
         0.1..1.0

@@ -202,7 +202,7 @@ fn quantum(axis: &[f64]) -> Option<f64> {
     let all = values.len();
     values.sort_unstable_by(f64::total_cmp);
     values.dedup();
-    let steps = values.windows(2).map(|pair| pair[1] - pair[0]);
+    let steps = values.iter().skip(1).zip(&values).map(|(next, value)| next - value);
     let least = steps.fold(f64::INFINITY, f64::min);
     // Nine digits: steps of a decimal recorder differ in their last bits.
     let rounded = (least * 1e9).round() / 1e9;

@@ -3,6 +3,13 @@
 //! Each file states its source, conventions and tolerances; nothing here widens a tolerance.
 
 #![expect(dead_code, reason = "each test file uses its own share of these")]
+#![expect(
+    unreachable_pub,
+    clippy::expect_used,
+    clippy::indexing_slicing,
+    clippy::panic,
+    reason = "a test that cannot go on has failed"
+)]
 
 use serde_json::Value;
 use std::path::Path;
