@@ -43,6 +43,11 @@ pub enum Error {
     /// A file could not be read or written.
     #[cfg(feature = "interchange")]
     File(Box<crate::interchange::FileError>),
+    /// The samples are finite, but so large (above about 1e150) that `what` is not.
+    Overflow { what: &'static str },
+    /// Two measurements that are to be compared were made with different settings; `what` names the
+    /// first that differs.
+    SettingMismatch { what: &'static str },
 }
 
 /// Why a movement could not have been seen in a recording, whatever the eye did.
@@ -100,6 +105,13 @@ impl fmt::Display for Error {
             Self::NotObservable { why } => write!(f, "not observable: {why}"),
             #[cfg(feature = "interchange")]
             Self::File(error) => error.fmt(f),
+            Self::Overflow { what } => {
+                write!(f, "{what} is too large for a number; are the samples degrees?")
+            }
+            Self::SettingMismatch { what } => write!(
+                f,
+                "the two measurements differ in {what}; measure both with the same settings"
+            ),
         }
     }
 }
