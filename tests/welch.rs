@@ -1,5 +1,12 @@
-//! Windows, Welch spectra and periodograms against SciPy and 80-bit sums (`tests/reference/welch.json`),
-//! and what must hold for every spectrum.
+//! Windows, Welch spectra and periodograms against `SciPy` and 80-bit sums
+//! (`tests/reference/welch.json`), and what must hold for every spectrum.
+
+#![expect(
+    clippy::unwrap_used,
+    clippy::panic,
+    clippy::indexing_slicing,
+    reason = "a helper that fails fails its test"
+)]
 
 mod support;
 

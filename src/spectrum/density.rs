@@ -17,6 +17,18 @@ pub enum Scaling {
 ///
 /// Bin `k` stands at `k · rate / fft_length` hertz. All values but those at zero and, for an even
 /// transform, at half the rate hold the power of the negative frequency too.
+///
+/// # Example
+/// ```
+/// use fixational::spectrum::{WelchOptions, welch};
+/// let rate = fixational::SamplingRate::new(1000.0)?;
+/// let x: Vec<f64> = (0..100).map(|i| 0.01 * f64::from(i % 3)).collect();
+/// let spectrum = welch(&x, rate, &WelchOptions::new(25))?;
+/// assert_eq!((spectrum.bin_width(), spectrum.frequency(2)), (40.0, 80.0));
+/// assert_eq!(spectrum.frequencies().len(), spectrum.values.len());
+/// assert_eq!((spectrum.segments, spectrum.samples_used, spectrum.samples_unused), (6, 90, 10));
+/// # Ok::<(), fixational::Error>(())
+/// ```
 #[derive(Debug, Clone, PartialEq)]
 #[cfg_attr(feature = "serde", derive(serde::Serialize))]
 #[non_exhaustive]

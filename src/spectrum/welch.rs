@@ -153,6 +153,18 @@ impl Welch {
     ///
     /// # Errors
     /// As [`estimate`](Self::estimate).
+    ///
+    /// # Example
+    /// ```
+    /// use fixational::spectrum::{Welch, WelchOptions};
+    /// let trials = [[0.0, 0.1, 0.0, -0.1], [0.1, 0.0, -0.1, 0.0]];
+    /// let plan = Welch::new(&WelchOptions::new(4), fixational::SamplingRate::new(100.0)?)?;
+    /// let mut scratch = plan.scratch();
+    /// for trial in &trials {
+    ///     assert_eq!(plan.estimate_with(trial, &mut scratch)?, plan.estimate(trial)?);
+    /// }
+    /// # Ok::<(), fixational::Error>(())
+    /// ```
     pub fn estimate_with<'a>(
         &self,
         x: impl Into<ArrayView1<'a, f64>>,
@@ -170,6 +182,19 @@ impl Welch {
     /// As [`estimate`](Self::estimate), where [`Error::TooShort`] means that no span holds a segment and
     /// only spans that hold one are searched for missing samples; [`Error::Span`] for a span that
     /// reaches past the signal.
+    ///
+    /// # Example
+    /// ```
+    /// use fixational::Spans;
+    /// use fixational::spectrum::{Welch, WelchOptions};
+    /// let x = [0.1, 0.0, -0.1, 0.0, f64::NAN, 0.2, 0.0, -0.2, 0.0, 0.2];
+    /// let plan = Welch::new(&WelchOptions::new(4), fixational::SamplingRate::new(100.0)?)?;
+    /// let present = Spans::from_mask(x.iter().map(|v| !v.is_nan()));
+    /// let spectrum = plan.estimate_spans(&x, &present)?;
+    /// assert_eq!((spectrum.segments, spectrum.samples_unused), (2, 1));
+    /// assert!(plan.estimate(&x).is_err()); // the gap is named, not bridged
+    /// # Ok::<(), fixational::Error>(())
+    /// ```
     pub fn estimate_spans<'a>(
         &self,
         x: impl Into<ArrayView1<'a, f64>>,
