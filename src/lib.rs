@@ -1,10 +1,24 @@
 #![cfg_attr(docsrs, feature(doc_cfg))]
-#![cfg_attr(
-    test,
-    expect(clippy::float_cmp, reason = "tests compare exactly what is claimed exact")
-)]
 
-//! Signal processing of fixational eye movements.
+#![doc = include_str!("../README.md")]
+//!
+//! # The rooms
+//!
+//! Data flows one way, down this list; a module knows what stands above it and nothing below.
+//!
+//! | room | what it answers |
+//! |---|---|
+//! | [`error`], [`estimate`] | what can go wrong; how sure |
+//! | [`statistics`] | what a handful of numbers says |
+//! | [`recording`] | what was recorded |
+//! | [`conditioning`] | made fit for analysis |
+//! | [`events`] | what moved, and when |
+//! | [`spectrum`] | how power spreads over frequency |
+//! | [`simulation`] | known truth |
+//! | [`tremor`] | was there tremor |
+//! | [`stability`] | how noise averages down |
+//! | [`instrument`] | what the instrument could have seen |
+//! | `interchange` | files (feature of that name) |
 
 pub mod conditioning;
 pub mod error;

@@ -2,7 +2,7 @@
 //! spectrum and by the whole measurement between events. Degrees of freedom and intervals stand in the
 //! file too, as do other rules of integration; the crate does not compute them yet.
 
-#![expect(clippy::unwrap_used, clippy::panic, reason = "a test that cannot go on has failed")]
+#![expect(clippy::panic, reason = "a test that cannot go on has failed")]
 
 mod support;
 

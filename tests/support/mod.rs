@@ -2,7 +2,7 @@
 //!
 //! Each file states its source, conventions and tolerances; nothing here widens a tolerance.
 
-#![expect(dead_code, reason = "each test file uses its own share of these")]
+#![allow(dead_code, reason = "each test file uses its own share of these")]
 #![expect(
     unreachable_pub,
     clippy::expect_used,
