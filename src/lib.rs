@@ -1,5 +1,4 @@
 #![cfg_attr(docsrs, feature(doc_cfg))]
-
 #![doc = include_str!("../README.md")]
 //!
 //! # The rooms
