@@ -2,11 +2,7 @@
 //! and a sentence or a sound path for each kind of odd file.
 
 #![cfg(feature = "interchange")]
-#![expect(
-    clippy::indexing_slicing,
-    clippy::unwrap_used,
-    reason = "a test that cannot go on has failed"
-)]
+#![expect(clippy::float_cmp, clippy::unwrap_used, reason = "a test that cannot go on has failed")]
 
 use fixational::events::MicrosaccadeCriteria;
 use fixational::interchange::read_events;
@@ -46,7 +42,7 @@ fn failure(arguments: &[&str]) -> String {
 }
 
 fn number(value: &Value) -> f64 {
-    value.as_f64().unwrap_or_else(|| f64::NAN)
+    value.as_f64().unwrap_or(f64::NAN)
 }
 
 fn notes(report: &Value) -> String {
@@ -249,7 +245,7 @@ fn two_eyes_share_their_movements() {
     let short = table(
         folder.path(),
         "short.csv",
-        (0..100).map(|i| [(i as f64 / 1000.0).to_string(), "0.1".into(), i.to_string()]),
+        (0..100).map(|i| [(f64::from(i) / 1000.0).to_string(), "0.1".into(), i.to_string()]),
     );
     let message = failure(&[left.to_str().unwrap(), short.to_str().unwrap()]);
     assert!(message.contains("left eye has 8000 samples but right eye has 100"), "{message}");
