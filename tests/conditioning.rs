@@ -631,6 +631,9 @@ fn times_that_are_no_clock() {
     // No finite rate.
     let tiny = [0.0, 5e-324, 1e-323];
     assert!(matches!(uniform_trace(&tiny, &zeros[..3], &zeros[..3]), Err(Error::Parameter { .. })));
+    let clock = UniformClock::default().longest_gap(f64::MAX);
+    let far = [-8.4e307, 0.0, 9.7e307];
+    assert!(matches!(clock.to_trace(&far, &[0.0; 3], &[0.0; 3]), Err(Error::Parameter { .. })));
     let huge = [-f64::MAX, f64::MAX];
     assert!(matches!(uniform_trace(&huge, &[0.0; 2], &[0.0; 2]), Err(Error::Clock { row: 1, .. })));
 }

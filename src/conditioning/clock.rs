@@ -177,7 +177,7 @@ impl UniformClock {
     /// # Errors
     /// - [`Error::LengthMismatch`], [`Error::TooShort`] for fewer than two rows.
     /// - [`Error::Parameter`] for a `longest_gap` that is not finite and above zero, and for times so
-    ///   close that they have no finite rate.
+    ///   close, or so far apart, that they have no finite rate.
     /// - [`Error::Infinite`], [`Error::HalfMissing`], as for [`Trace::new`], by row.
     /// - [`Error::BackwardTime`] where time runs backward.
     /// - [`Error::RateMismatch`] if the stated rate and the clock's own differ by more than a tenth.
@@ -200,6 +200,8 @@ impl UniformClock {
             Some(rate) => period::stated(&times, median, rate)?,
             None => period::counted(&times, median),
         };
+        // Times near the largest number overflow; nothing can be placed then.
+        SamplingRate::new(1.0 / period)?;
 
         let mut placed = Placement::new(period, median, &times);
         placed.place(&times, &x, &y)?;
