@@ -159,24 +159,24 @@ fn describe_clock(
             ));
         }
     }
-    if report.basis == RateBasis::Elapsed {
+    if report.basis == RateBasis::Fitted {
         note(format!(
-            "the median interval ({:.6} s) does not fit its clock; the rate, {:.4} Hz, is counted \
-             over the whole recording",
+            "the median interval ({:.6} s) does not fit its clock; the rate, {:.4} Hz, is fitted \
+             to all of it",
             report.median_interval,
             used.hertz()
         ));
     }
-    if !report.duplicates.is_empty() {
+    if !report.repeated.is_empty() {
         note(format!(
             "{} rows repeat the time before them and are left out",
-            report.duplicates.len()
+            report.repeated.len()
         ));
     }
-    if report.missing > 0 {
+    if !report.gaps.is_empty() {
         note(format!(
             "its clock leaves out {} samples in {} gaps; they count as missing",
-            report.missing,
+            report.gaps.samples(),
             report.gaps.count()
         ));
     }

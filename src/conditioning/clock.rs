@@ -1,85 +1,76 @@
-use crate::input::positive;
-use crate::statistics::{median, standard_deviation};
-use crate::{Error, Result, SamplingRate, Spans, Trace};
+mod line;
+mod period;
+mod placement;
 
-/// From rows with timestamps to a trace at a uniform rate.
+use self::placement::Placement;
+use crate::input::{contiguous, positive, refuse_infinite};
+use crate::{Error, Result, SamplingRate, Spans, Trace};
+use ndarray::ArrayView1;
+
+const NOT_FINITE: &str = "a time must be a finite number of seconds";
+const LONG_GAP: &str = "the gap before this row is longer than `longest_gap`; mend the time, cut the \
+                        recording here, or allow longer gaps";
+const REPEATED: &str = "more than one row in twenty repeats the time before it, from this row on: the \
+                        clock is too coarse for the rate; if no row is lost, state the rate and take \
+                        the rows as equally spaced (`Trace::new`)";
+
+/// Puts rows with time stamps onto a uniform grid: lost rows become missing samples, nothing else
+/// changes.
 ///
-/// Rows are placed by how many sampling periods lie between them, counted from row to row, so that a
-/// clock that runs at 298 Hz and calls itself 300 shifts no sample. Where rows are missing, missing
-/// samples stand; nothing is invented, and no row is moved further than to its place in the row of
-/// samples. What was found is in the [`ClockReport`].
+/// No sample is interpolated or moved off its value: each row becomes the sample of the grid point that
+/// it stands next to, and a grid point without a row is missing (NaN). The first row is sample 0.
 ///
-/// The rate is one over the median interval, unless one is stated. Where a grid of that interval would
-/// drift away from the rows by half a sample or more (stamps rounded to milliseconds at 300 Hz have a
-/// median of 3 ms, which is 333 Hz), the rate is the counted periods over the time elapsed instead; the
-/// report says which.
+/// **How many periods lie between two rows.** The median interval says what one period is about. The
+/// mean of all intervals between 0.4 and 1.6 medians is a first period (a clock that counts in
+/// milliseconds stamps 300 Hz as 3, 3, 4 ms, and no single interval is the period). Longer intervals
+/// are then counted from the shortest to the longest, each with the period that all shorter ones gave:
+/// a blink of 3 s is 900 periods of 300 Hz, not 1000 of 3 ms. Last, rows are placed one after another.
+/// Row i stands
 ///
-/// # Source
-/// Rules of our own, stated here.
+/// ```text
+/// k = ⌊(t[i] − g)/T + ½⌋
+/// ```
+///
+/// periods T after the row before, where g is the time at which the grid expects that row. Afterwards
+/// `g ← (g + k·T + t[i])/2`: the grid follows the clock, so that a slow drift never skips a sample, and
+/// a late stamp does not shift the rows after it. With T known, each row finds its place as long as every stamp lies
+/// within a quarter of a period of a uniform grid, or every interval within a quarter of a period of a
+/// whole number of periods (half each way is the weight that bears as much of the one as of the other).
+/// A row farther off may take the place of its neighbour, which is then left out, and listed.
+///
+/// **The rate** is 1/median interval if the grid of that period, laid from the first row, stays within
+/// half a sample of every row; otherwise that of the least-squares line of time on grid index.
+/// [`ClockReport::basis`] says which. With a [`stated_rate`](Self::stated_rate) rows are placed by the
+/// stated period, gaps too, and that rate is the trace's.
+///
+/// **What a clock can carry.** A clock that counts in steps must count at least two a period. Below
+/// that, rows cannot always be told from lost rows: 800 Hz stamped in milliseconds looks like 1000 Hz
+/// with every fifth row lost. If at least one row in a hundred is skipped or repeated in a regular
+/// rhythm, that is an error; a stated rate decides it.
 ///
 /// # Example
+/// A camera at 300 Hz whose stamps are whole milliseconds; two rows are lost.
 /// ```
 /// use fixational::conditioning::{RateBasis, UniformClock};
-/// // 500 Hz; the row at 4 ms was lost.
-/// let time = [0.0, 0.002, 0.006, 0.008, 0.010, 0.012];
-/// let x = [1.0, 2.0, 4.0, 5.0, 6.0, 7.0];
-/// let (trace, report) = UniformClock::default().to_trace(&time, &x, &[0.0; 6])?;
-/// assert!((trace.rate().hertz() - 500.0).abs() < 1e-9);
-/// assert!(trace.len() == 7 && trace.x()[2].is_nan() && trace.x()[3] == 4.0);
-/// assert_eq!((report.basis, report.missing), (RateBasis::MedianInterval, 1));
+/// let rows: Vec<u32> = (0..600).filter(|i| ![100, 101].contains(i)).collect();
+/// let times: Vec<f64> = rows.iter().map(|&i| (f64::from(i) / 0.3).round() / 1000.0).collect();
+/// let x: Vec<f64> = rows.iter().map(|&i| f64::from(i)).collect();
+/// let (trace, report) = UniformClock::default().to_trace(&times, &x, &x)?;
+/// assert_eq!(report.basis, RateBasis::Fitted); // the median interval, 3 ms, would say 333 Hz
+/// assert!((trace.rate().hertz() - 300.0).abs() < 0.01);
+/// assert_eq!(report.gaps.iter().collect::<Vec<_>>(), [100..102]);
+/// assert_eq!((trace.len(), trace.x()[102]), (600, 102.0));
 /// # Ok::<(), fixational::Error>(())
 /// ```
 #[derive(Debug, Clone, Copy, PartialEq)]
 #[cfg_attr(feature = "serde", derive(serde::Serialize))]
 #[non_exhaustive]
 pub struct UniformClock {
-    /// The sampling rate, where the caller knows better than the timestamps. It must agree with them
-    /// to a fifth. Default: none.
+    /// The rate, if it is known better than the stamps tell it. Default: none, the stamps decide.
     pub stated_rate: Option<SamplingRate>,
-    /// Longest gap that is filled with missing samples, s; finite, > 0. Default 600: a longer one is
-    /// two recordings. Ours.
+    /// The longest interval between two rows, s; finite, > 0. Default 600 s (ours: longer than a pause
+    /// in a session, shorter than what one wrong stamp makes).
     pub longest_gap: f64,
-}
-
-/// Where the rate of a trace came from.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-#[cfg_attr(feature = "serde", derive(serde::Serialize))]
-#[non_exhaustive]
-pub enum RateBasis {
-    /// One over the median interval between rows.
-    MedianInterval,
-    /// Counted periods over the time from the first row to the last.
-    Elapsed,
-    /// Stated by the caller.
-    Stated,
-}
-
-/// What the clock did.
-#[derive(Debug, Clone, PartialEq)]
-#[cfg_attr(feature = "serde", derive(serde::Serialize))]
-#[non_exhaustive]
-pub struct ClockReport {
-    /// Rate of the trace, Hz.
-    pub rate: f64,
-    /// Where it came from.
-    pub basis: RateBasis,
-    /// Median interval between rows that differ in time, s.
-    pub median_interval: f64,
-    /// Counted periods over the time from the first row to the last, Hz.
-    pub measured_rate: f64,
-    /// Standard deviation of the intervals about the whole numbers of measured periods that they
-    /// stand for, s.
-    pub jitter: f64,
-    /// The largest such difference, s.
-    pub largest_jitter: f64,
-    /// Rows given.
-    pub rows: usize,
-    /// Rows with the time of the row before; they are left out of the trace.
-    pub duplicates: Vec<usize>,
-    /// Stretches of the trace that no row fills.
-    pub gaps: Spans,
-    /// Samples in them.
-    pub missing: usize,
 }
 
 impl Default for UniformClock {
@@ -88,243 +79,216 @@ impl Default for UniformClock {
     }
 }
 
+/// What the rate of a trace was taken from.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+#[cfg_attr(feature = "serde", derive(serde::Serialize))]
+#[non_exhaustive]
+pub enum RateBasis {
+    /// The median interval: its grid stays within half a sample of every row.
+    Median,
+    /// The least-squares line of time on grid index.
+    Fitted,
+    /// The rate that the caller stated.
+    Stated,
+}
+
+/// What the clock did, and what was made of it.
+#[derive(Debug, Clone, PartialEq)]
+#[cfg_attr(feature = "serde", derive(serde::Serialize))]
+#[non_exhaustive]
+pub struct ClockReport {
+    /// The rate of the trace.
+    pub rate: SamplingRate,
+    /// What it was taken from.
+    pub basis: RateBasis,
+    /// Median interval between rows, s; repeated times left out. Of an even number of intervals it is
+    /// the shorter of the middle two: one that occurred.
+    pub median_interval: f64,
+    /// What the clock says itself: the rate of the least-squares line of time on grid index. One slope,
+    /// and a new intercept after each gap of eight samples or more, whose length the rate decided.
+    pub fitted_rate: SamplingRate,
+    /// The rate that was stated.
+    pub stated_rate: Option<SamplingRate>,
+    /// Time from the first to the last row, s. The trace's own time, `(len − 1)/rate`, slips against
+    /// the clock by what it differs from this.
+    pub elapsed: f64,
+    /// Standard deviation (n − 1) of the interval between rows that are neighbours on the grid, s. It
+    /// holds the clock's rounding as well as its jitter. Zero for a single interval.
+    pub jitter: f64,
+    /// Largest distance of such an interval from their mean, s.
+    pub peak_jitter: f64,
+    /// Rows that came in.
+    pub rows: usize,
+    /// Rows that were left out, counted from 0: each fell on the grid point of the row before, which
+    /// was kept.
+    pub repeated: Vec<usize>,
+    /// Samples of the trace that no row stood for. Rows that came in as missing are not among them.
+    pub gaps: Spans,
+}
+
+impl ClockReport {
+    /// Rows that became a sample.
+    #[must_use]
+    pub fn kept(&self) -> usize {
+        self.rows - self.repeated.len()
+    }
+}
+
+/// Rows with time stamps as a uniform trace, by the rules of [`UniformClock`] at its defaults.
+///
+/// # Errors
+/// As [`UniformClock::to_trace`].
+///
+/// # Example
+/// ```
+/// use fixational::conditioning::uniform_trace;
+/// let (trace, report) = uniform_trace(&[0.0, 0.5, 2.0, 2.5], &[1.0; 4], &[2.0; 4])?;
+/// assert_eq!((trace.rate().hertz(), trace.len(), trace.missing()), (2.0, 6, 2));
+/// assert_eq!(report.gaps.iter().collect::<Vec<_>>(), [2..4]);
+/// # Ok::<(), fixational::Error>(())
+/// ```
+pub fn uniform_trace<'a>(
+    times: impl Into<ArrayView1<'a, f64>>,
+    x: impl Into<ArrayView1<'a, f64>>,
+    y: impl Into<ArrayView1<'a, f64>>,
+) -> Result<(Trace, ClockReport)> {
+    UniformClock::default().to_trace(times, x, y)
+}
+
 impl UniformClock {
-    /// States the sampling rate.
+    /// The rate is `rate`, whatever the stamps say; they may differ from it by a tenth.
     #[must_use]
     pub fn stated_rate(mut self, rate: SamplingRate) -> Self {
         self.stated_rate = Some(rate);
         self
     }
 
-    /// Sets the longest gap that is filled with missing samples, s.
+    /// The longest interval between two rows, s.
     #[must_use]
     pub fn longest_gap(mut self, seconds: f64) -> Self {
         self.longest_gap = seconds;
         self
     }
 
-    /// The rows as a trace, and what the clock did. `time` in seconds; `x` and `y` in degrees, NaN
-    /// where a row holds no position.
+    /// The trace of the positions `x` and `y` (degrees) stamped `times` (seconds), and what was done.
+    ///
+    /// The time of sample i is `times[0] + i/rate`, within what the clock slips.
     ///
     /// # Errors
-    /// [`Error::LengthMismatch`]; [`Error::Parameter`] for a setting out of its domain or a stated rate
-    /// that the timestamps contradict; [`Error::TooShort`] with fewer than two different times;
-    /// [`Error::BackwardTime`] with the row; [`Error::Clock`] with the row for a time that is not a
-    /// number, a gap that is too long, or a clock too coarse to tell the rows apart;
-    /// [`Error::HalfMissing`] and [`Error::Infinite`] with the row.
-    pub fn to_trace(&self, time: &[f64], x: &[f64], y: &[f64]) -> Result<(Trace, ClockReport)> {
+    /// - [`Error::LengthMismatch`], [`Error::TooShort`] for fewer than two rows.
+    /// - [`Error::Parameter`] for a `longest_gap` that is not finite and above zero, and for times so
+    ///   close, or so far apart, that they have no finite rate.
+    /// - [`Error::Infinite`], [`Error::HalfMissing`], as for [`Trace::new`], by row.
+    /// - [`Error::BackwardTime`] where time runs backward.
+    /// - [`Error::RateMismatch`] if the stated rate and the clock's own differ by more than a tenth.
+    /// - [`Error::Clock`] for a time that is not finite, for an interval above `longest_gap`, if more
+    ///   than 1 row in 20 repeats a time, if times are skipped or repeated in a regular rhythm and no
+    ///   rate is stated, and if more than seven samples were to be filled in for each row and
+    ///   4,194,304 besides.
+    pub fn to_trace<'a>(
+        &self,
+        times: impl Into<ArrayView1<'a, f64>>,
+        x: impl Into<ArrayView1<'a, f64>>,
+        y: impl Into<ArrayView1<'a, f64>>,
+    ) -> Result<(Trace, ClockReport)> {
+        let (times, x, y) = (contiguous(times.into()), contiguous(x.into()), contiguous(y.into()));
         positive("longest_gap", self.longest_gap)?;
-        for (right, len) in [("x", x.len()), ("y", y.len())] {
-            if len != time.len() {
-                let (left, left_len) = ("time", time.len());
-                return Err(Error::LengthMismatch { left, left_len, right, right_len: len });
-            }
-        }
-        // The positions' own errors, by row; a rate is needed to ask for them, and any will do.
-        Trace::new(SamplingRate::new(1.0)?, x, y)?;
-        let Rows { kept, duplicates, intervals } = Rows::of(time)?;
-
-        let median_interval = median(&intervals)?;
+        check_positions(times.len(), &x, &y)?;
+        let repeated = check_times(&times, self.longest_gap)?;
+        let median = period::median(&times, repeated)?;
         let period = match self.stated_rate {
-            Some(rate) => self.agreed(rate, local_period(&intervals, median_interval))?,
-            None => local_period(&intervals, median_interval),
+            Some(rate) => period::stated(&times, median, rate)?,
+            None => period::counted(&times, median),
         };
-        let place = self.places(time, &kept, &intervals, period)?;
-        let (periods, elapsed) = span(time, &kept, &place);
-        let measured = periods as f64 / elapsed;
+        // Times near the largest number overflow; nothing can be placed then.
+        SamplingRate::new(1.0 / period)?;
 
-        let fits = |interval: f64| {
-            let first = kept.first().and_then(|&row| time.get(row)).copied().unwrap_or(0.0);
-            kept.iter().zip(&place).all(|(&row, &k)| {
-                let off = time.get(row).map_or(0.0, |t| (t - first) - k as f64 * interval);
-                off.abs() < interval / 2.0
-            })
-        };
+        let mut placed = Placement::new(period, median, &times);
+        placed.place(&times, &x, &y)?;
+        check_repeated(&times, placed.repeated.len(), placed.repeats.first)?;
+        if self.stated_rate.is_none() {
+            placed.check_rhythm(&times)?;
+        }
+
+        let fitted_rate = SamplingRate::new(1.0 / placed.fit.period())?;
         let (rate, basis) = match self.stated_rate {
             Some(rate) => (rate, RateBasis::Stated),
-            None if fits(median_interval) => {
-                (SamplingRate::new(1.0 / median_interval)?, RateBasis::MedianInterval)
+            None if placed.off_median <= median / 2.0 => {
+                (SamplingRate::new(1.0 / median)?, RateBasis::Median)
             }
-            None => (SamplingRate::new(measured)?, RateBasis::Elapsed),
+            None => (fitted_rate, RateBasis::Fitted),
         };
-
-        let len = periods + 1;
-        let (mut xs, mut ys) = (vec![f64::NAN; len], vec![f64::NAN; len]);
-        for (&row, &k) in kept.iter().zip(&place) {
-            if let (Some(to), Some(from)) = (xs.get_mut(k), x.get(row)) {
-                *to = *from;
-            }
-            if let (Some(to), Some(from)) = (ys.get_mut(k), y.get(row)) {
-                *to = *from;
-            }
-        }
-        let mut gaps = Spans::none();
-        for pair in place.windows(2) {
-            if let &[before, after] = pair {
-                gaps.append(before + 1..after);
-            }
-        }
-        let off = jitter(&intervals, &place, elapsed / periods as f64);
+        let (jitter, peak_jitter) = placed.neighbours.spread();
         let report = ClockReport {
-            rate: rate.hertz(),
+            rate,
             basis,
-            median_interval,
-            measured_rate: measured,
-            jitter: standard_deviation(&off, 0)?,
-            largest_jitter: off.iter().fold(0.0, |most, off| most.max(off.abs())),
-            rows: time.len(),
-            duplicates,
-            missing: gaps.samples(),
-            gaps,
+            median_interval: median,
+            fitted_rate,
+            stated_rate: self.stated_rate,
+            elapsed: elapsed(&times),
+            jitter,
+            peak_jitter,
+            rows: times.len(),
+            repeated: placed.repeated,
+            gaps: Spans::new(placed.gaps)?,
         };
-        Ok((Trace::new(rate, xs, ys)?, report))
-    }
-
-    /// The stated period, unless the clock contradicts it.
-    fn agreed(&self, stated: SamplingRate, period: f64) -> Result<f64> {
-        if (0.8..=1.25).contains(&(period * stated.hertz())) {
-            return Ok(stated.interval());
-        }
-        let allowed = "within a fifth of the rate that the timestamps show";
-        Err(Error::Parameter { name: "stated_rate", value: stated.hertz(), allowed })
-    }
-
-    /// The sample that each kept row becomes: periods counted from row to row, each at least one.
-    fn places(
-        &self,
-        time: &[f64],
-        kept: &[usize],
-        intervals: &[f64],
-        period: f64,
-    ) -> Result<Vec<usize>> {
-        let limit = time.len().saturating_mul(100).saturating_add(10_000_000);
-        let mut place = Vec::with_capacity(kept.len());
-        place.push(0);
-        let mut reached = 0_usize;
-        for (interval, &row) in intervals.iter().zip(kept.iter().skip(1)) {
-            let at = time.get(row).copied().unwrap_or(f64::NAN);
-            if *interval > self.longest_gap {
-                let why = "the gap before this row is longer than `longest_gap`; it separates two \
-                           recordings";
-                return Err(Error::Clock { why, row, time: at });
-            }
-            reached += (interval / period).round().max(1.0) as usize;
-            if reached > limit {
-                let why =
-                    "up to this row gaps hold a hundred times as many samples as there are rows";
-                return Err(Error::Clock { why, row, time: at });
-            }
-            place.push(reached);
-        }
-        Ok(place)
+        Ok((Trace::from_checked(rate, placed.x, placed.y), report))
     }
 }
 
-/// Rows that are told apart by their time.
-struct Rows {
-    kept: Vec<usize>,
-    duplicates: Vec<usize>,
-    /// From each kept row to the next, s; above zero.
-    intervals: Vec<f64>,
+fn elapsed(times: &[f64]) -> f64 {
+    times.first().zip(times.last()).map_or(0.0, |(first, last)| last - first)
 }
 
-impl Rows {
-    fn of(time: &[f64]) -> Result<Self> {
-        let mut rows = Self { kept: Vec::new(), duplicates: Vec::new(), intervals: Vec::new() };
-        let mut previous = f64::NEG_INFINITY;
-        for (row, &time) in time.iter().enumerate() {
-            if !time.is_finite() {
-                return Err(Error::Clock { why: "a time must be a finite number", row, time });
-            }
-            if time < previous {
-                return Err(Error::BackwardTime { row, previous, time });
-            }
-            if time > previous {
-                if previous.is_finite() {
-                    rows.intervals.push(time - previous);
-                }
-                rows.kept.push(row);
-                previous = time;
+/// Equal lengths, two rows or more, and what [`Trace::new`] asks, by row.
+fn check_positions(rows: usize, x: &[f64], y: &[f64]) -> Result<()> {
+    for (right, right_len) in [("x", x.len()), ("y", y.len())] {
+        if right_len != rows {
+            return Err(Error::LengthMismatch { left: "times", left_len: rows, right, right_len });
+        }
+    }
+    if rows < 2 {
+        return Err(Error::TooShort { what: "times", needed: 2, found: rows });
+    }
+    refuse_infinite("x", x)?;
+    refuse_infinite("y", y)?;
+    match x.iter().zip(y).position(|(x, y)| x.is_nan() != y.is_nan()) {
+        Some(index) => Err(Error::HalfMissing { index }),
+        None => Ok(()),
+    }
+}
+
+/// Finite times that never run backward, no interval above `longest_gap`, few repeated; how many.
+fn check_times(times: &[f64], longest_gap: f64) -> Result<usize> {
+    let (mut repeated, mut first) = (0, None);
+    for (row, (&previous, &time)) in (1..).zip(times.iter().zip(times.iter().skip(1))) {
+        let step = time - previous;
+        // A NaN or an infinity on either side fails this too.
+        if !(0.0..=longest_gap).contains(&step) {
+            return Err(if !previous.is_finite() {
+                Error::Clock { why: NOT_FINITE, row: row - 1, time: previous }
+            } else if !time.is_finite() {
+                Error::Clock { why: NOT_FINITE, row, time }
+            } else if time < previous {
+                Error::BackwardTime { row, previous, time }
             } else {
-                rows.duplicates.push(row);
-            }
-        }
-        if rows.kept.len() < 2 {
-            let found = rows.kept.len();
-            return Err(Error::TooShort { what: "the clock's different times", needed: 2, found });
-        }
-        // One row in twenty: more is not a hiccup of the recorder but stamps too coarse for its rate.
-        if rows.duplicates.len() * 20 > time.len() {
-            let row = rows.duplicates.first().copied().unwrap_or(0);
-            let why = "so many rows share their time with the row before that the clock cannot place \
-                       them; take the rows as equally spaced at the rate that the recorder states";
-            return Err(Error::Clock {
-                why,
-                row,
-                time: time.get(row).copied().unwrap_or(f64::NAN),
+                Error::Clock { why: LONG_GAP, row, time }
             });
         }
-        Ok(rows)
-    }
-}
-
-/// The sampling period as neighbouring rows show it, s: the mean of the intervals that are one period.
-///
-/// Stamps rounded to a step make intervals of two lengths, one step apart. Their mean is the period,
-/// where their median is only the commoner of the two; so the search starts from the mean of all
-/// intervals within a step of the median, and goes on with those that round to one period of it.
-fn local_period(intervals: &[f64], median: f64) -> f64 {
-    let mean_where = |inside: &dyn Fn(f64) -> bool| {
-        let chosen = intervals.iter().copied().filter(|interval| inside(*interval));
-        let (sum, count) =
-            chosen.fold((0.0, 0_usize), |(sum, n), interval| (sum + interval, n + 1));
-        (count > 0).then(|| sum / count as f64)
-    };
-    let step = rounding_step(intervals, median).unwrap_or(0.0);
-    let near = 1.01 * step + 1e-9 * median;
-    let mut period = mean_where(&|interval| (interval - median).abs() <= near).unwrap_or(median);
-    for _ in 0..20 {
-        let next = mean_where(&|interval| interval < 1.5 * period).unwrap_or(period);
-        if (next - period).abs() <= 1e-12 * period {
-            break;
+        if step <= 0.0 {
+            repeated += 1;
+            first = first.or(Some(row));
         }
-        period = next;
     }
-    period
+    check_repeated(times, repeated, first)?;
+    Ok(repeated)
 }
 
-/// The step that the stamps were rounded to, s, if intervals show one of at least a fiftieth of the
-/// median: the least difference between them, if all are whole multiples of it.
-fn rounding_step(intervals: &[f64], median: f64) -> Option<f64> {
-    // Rounding shows itself in any stretch: the first few thousand intervals tell.
-    let stretch = intervals.iter().copied().take(10_000);
-    let mut near: Vec<f64> = stretch.filter(|d| *d < 3.0 * median).collect();
-    near.sort_unstable_by(f64::total_cmp);
-    let fine = 1e-3 * median;
-    near.dedup_by(|a, b| (*a - *b).abs() < fine);
-    let step = near.windows(2).map(|pair| match pair {
-        [a, b] => b - a,
-        _ => f64::INFINITY,
-    });
-    let step = step.fold(f64::INFINITY, f64::min);
-    let whole = |interval: &f64| {
-        let multiple = interval / step;
-        (multiple - multiple.round()).abs() < 0.02
-    };
-    (step >= 0.02 * median && step.is_finite() && near.iter().all(whole)).then_some(step)
-}
-
-/// Periods counted and seconds elapsed from the first kept row to the last; both above zero.
-fn span(time: &[f64], kept: &[usize], place: &[usize]) -> (usize, f64) {
-    let at = |row: Option<&usize>| row.and_then(|&row| time.get(row)).copied().unwrap_or(f64::NAN);
-    (place.last().copied().unwrap_or(1), at(kept.last()) - at(kept.first()))
-}
-
-/// Each interval less the whole number of periods that it stands for, s.
-fn jitter(intervals: &[f64], place: &[usize], period: f64) -> Vec<f64> {
-    let counts = place.windows(2).map(|pair| match pair {
-        [a, b] => (b - a) as f64,
-        _ => f64::NAN,
-    });
-    intervals.iter().zip(counts).map(|(interval, count)| interval - count * period).collect()
+fn check_repeated(times: &[f64], repeated: usize, first: Option<usize>) -> Result<()> {
+    match first.and_then(|row| times.get(row).map(|&time| (row, time))) {
+        Some((row, time)) if repeated > times.len() / 20 => {
+            Err(Error::Clock { why: REPEATED, row, time })
+        }
+        _ => Ok(()),
+    }
 }

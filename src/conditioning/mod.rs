@@ -8,8 +8,8 @@ mod loss;
 mod savitzky_golay;
 mod velocity;
 
-pub use clock::{ClockReport, RateBasis, UniformClock};
-pub use loss::{MarkerRule, join_missing, mark_missing};
+pub use clock::{ClockReport, RateBasis, UniformClock, uniform_trace};
+pub use loss::{LossReport, MarkerRule, join_missing, mark_missing};
 pub use savitzky_golay::SavitzkyGolay;
 pub use velocity::{Velocity, VelocityRule, derivative, velocity};
 
