@@ -1,6 +1,12 @@
 //! Time stamps onto a uniform grid, and loss markers. The truth is made first (which rows there were,
 //! at which rate), then stamped as odd clocks stamp; the trace must be that truth again.
 
+#![expect(
+    clippy::float_cmp,
+    clippy::indexing_slicing,
+    reason = "exact values; a test that cannot go on has failed"
+)]
+
 use fixational::conditioning::{
     ClockReport, LossReport, MarkerRule, RateBasis, UniformClock, join_missing, mark_missing,
     uniform_trace,
