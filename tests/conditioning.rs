@@ -4,6 +4,7 @@
 #![expect(
     clippy::float_cmp,
     clippy::indexing_slicing,
+    clippy::unwrap_used,
     reason = "exact values; a test that cannot go on has failed"
 )]
 
