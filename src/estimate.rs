@@ -46,9 +46,7 @@ impl Estimate {
     /// ```
     pub fn poisson_rate(count: usize, seconds: f64, level: f64) -> Result<Self> {
         crate::input::positive("seconds", seconds)?;
-        if !(level > 0.0 && level < 1.0) {
-            return Err(Error::Parameter { name: "level", value: level, allowed: "0 < level < 1" });
-        }
+        check_level(level)?;
         let tail = (1.0 - level) / 2.0;
         let n = count as f64;
         let lower = if count == 0 { 0.0 } else { chi_squared_quantile(2.0 * n, tail) };
@@ -59,6 +57,27 @@ impl Estimate {
             upper: upper / (2.0 * seconds),
             level,
         })
+    }
+}
+
+/// The χ² interval of a variance or power with `dof` equivalent degrees of freedom:
+/// `[ν v/χ²_{1−α/2}(ν), ν v/χ²_{α/2}(ν)]`.
+pub(crate) fn chi_squared_interval(value: f64, dof: f64, level: f64) -> Result<Estimate> {
+    check_level(level)?;
+    let tail = (1.0 - level) / 2.0;
+    Ok(Estimate {
+        value,
+        lower: dof * value / chi_squared_quantile(dof, 1.0 - tail),
+        upper: dof * value / chi_squared_quantile(dof, tail),
+        level,
+    })
+}
+
+fn check_level(level: f64) -> Result<()> {
+    if level > 0.0 && level < 1.0 {
+        Ok(())
+    } else {
+        Err(Error::Parameter { name: "level", value: level, allowed: "0 < level < 1" })
     }
 }
 

@@ -103,10 +103,17 @@ impl Spectrum {
     /// ```
     pub fn band_power(&self, band: Band, edges: BandEdges) -> Result<f64> {
         band.below_nyquist(self.rate)?;
-        let sum = match edges {
-            BandEdges::Centres => self.sum_by_centres(band)?,
-            BandEdges::Proportional => self.sum_by_shares(band),
-        };
+        let shares = (0..self.values.len()).map(|k| self.share(k, band, edges));
+        let (bins, sum) =
+            shares.zip(&self.values).fold((0_usize, 0.0), |(bins, sum), (share, value)| {
+                if share > 0.0 { (bins + 1, sum + share * value) } else { (bins, sum) }
+            });
+        if bins == 0 {
+            let (low, high, bin_width) = (band.low(), band.high(), self.bin_width());
+            return Err(Error::NotObservable {
+                why: NotObservable::NoBinInBand { low, high, bin_width },
+            });
+        }
         let power = match self.scaling {
             Scaling::Density => sum * self.bin_width(),
             Scaling::Power => sum * (self.bin_width() / self.noise_bandwidth),
@@ -114,33 +121,19 @@ impl Spectrum {
         if power.is_finite() { Ok(power) } else { Err(Error::Overflow { what: "band power" }) }
     }
 
-    fn sum_by_centres(&self, band: Band) -> Result<f64> {
-        let inside = |k: usize| band.contains(self.frequency(k));
-        let (bins, sum) = self
-            .values
-            .iter()
-            .enumerate()
-            .filter(|(k, _)| inside(*k))
-            .fold((0_usize, 0.0), |(bins, sum), (_, value)| (bins + 1, sum + value));
-        if bins > 0 {
-            return Ok(sum);
+    /// How much of bin `k` counts as inside the band, from 0 to 1.
+    pub(super) fn share(&self, k: usize, band: Band, edges: BandEdges) -> f64 {
+        match edges {
+            BandEdges::Centres => f64::from(u8::from(band.contains(self.frequency(k)))),
+            BandEdges::Proportional => {
+                // In bins: this one reaches from k − ½ to k + ½, cut at zero and at half the rate.
+                let bins = self.fft_length as f64 / self.rate.hertz();
+                let left = (k as f64 - 0.5).max(0.0);
+                let right = (k as f64 + 0.5).min(self.fft_length as f64 / 2.0);
+                let (low, high) = (band.low() * bins, band.high() * bins);
+                ((right.min(high) - left.max(low)) / (right - left)).max(0.0)
+            }
         }
-        let (low, high, bin_width) = (band.low(), band.high(), self.bin_width());
-        Err(Error::NotObservable { why: NotObservable::NoBinInBand { low, high, bin_width } })
-    }
-
-    /// Everything in bins here: bin k reaches from k − ½ to k + ½, cut at zero and at half the rate.
-    fn sum_by_shares(&self, band: Band) -> f64 {
-        let bins = self.fft_length as f64 / self.rate.hertz();
-        let (low, high) = (band.low() * bins, band.high() * bins);
-        let end = self.fft_length as f64 / 2.0;
-        let shares = self.values.iter().enumerate().map(|(k, value)| {
-            let left = (k as f64 - 0.5).max(0.0);
-            let right = (k as f64 + 0.5).min(end);
-            let inside = (right.min(high) - left.max(low)).max(0.0);
-            value * (inside / (right - left))
-        });
-        shares.sum()
     }
 }
 

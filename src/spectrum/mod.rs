@@ -10,6 +10,7 @@
 mod band;
 mod density;
 mod dpss;
+mod freedom;
 mod median;
 mod options;
 mod periodogram;
@@ -19,6 +20,7 @@ mod window;
 
 pub use band::{Band, BandEdges};
 pub use density::{Scaling, Spectrum};
+pub use freedom::Freedom;
 pub use median::median_bias;
 pub use options::{Average, Detrend, Overlap, WelchOptions};
 pub use welch::{Welch, WelchScratch, welch};

@@ -123,6 +123,16 @@ impl Welch {
         self.layout.step
     }
 
+    /// Length of the transform, samples.
+    pub(super) fn fft_length(&self) -> usize {
+        self.layout.fft_length
+    }
+
+    /// Segments that fit into a span of `samples` samples.
+    pub(super) fn segments_in(&self, samples: usize) -> usize {
+        self.layout.segments(samples)
+    }
+
     /// Buffers for estimates with this plan.
     #[must_use]
     pub fn scratch(&self) -> WelchScratch {
