@@ -4,11 +4,12 @@
 
 mod support;
 
-use criterion::Criterion;
+use criterion::{Criterion, criterion_group, criterion_main};
 use fixational::spectrum::{
     Average, Band, BandEdges, Detrend, Welch, WelchOptions, WelchScratch, Window,
 };
-use fixational::{SamplingRate, Spans};
+use fixational::tremor::TremorCriteria;
+use fixational::{SamplingRate, Spans, Trace};
 use realfft::RealFftPlanner;
 use std::hint::black_box;
 
@@ -86,13 +87,10 @@ fn bench(c: &mut Criterion, size: (&str, usize)) {
     );
 }
 
-fn main() {
-    let mut c = support::criterion();
+fn welch_at_each_size(c: &mut Criterion) {
     for size in support::sizes() {
-        bench(&mut c, size);
+        bench(c, size);
     }
-    window_and_band(&mut c);
-    c.final_summary();
 }
 
 /// Does not depend on the length of the signal: a taper, and the sum over a band.
@@ -119,3 +117,33 @@ fn window_and_band(c: &mut Criterion) {
     }
     group.finish();
 }
+
+/// Degrees of freedom of a band, and the whole measurement of tremor beside its transforms.
+fn freedom_and_tremor(c: &mut Criterion) {
+    let (x, y) = (support::gaze(60_000, 1), support::gaze(60_000, 2));
+    let trace = Trace::new(rate(), x, y).unwrap();
+    let plan = Welch::new(&WelchOptions::new(250), rate()).unwrap();
+    let whole = Spans::whole(trace.len());
+    let spectrum = plan.estimate(trace.x()).unwrap();
+    assert!(plan.freedom(&whole).unwrap().bin(20) > 400.0);
+    c.bench_function("freedom of a band", |b| {
+        b.iter(|| plan.freedom(&whole).unwrap().band(&spectrum, Band::TREMOR, BandEdges::Centres))
+    });
+    let criteria = TremorCriteria::default();
+    let segments = criteria.measure(&trace, &Spans::none()).unwrap().segments;
+    let floor = bare_transforms(2 * segments, 250);
+    support::beside_floor(
+        c,
+        "tremor",
+        ("60k", trace.len()),
+        ("bare transforms", floor),
+        ("measure", || criteria.measure(&trace, &Spans::none())),
+    );
+}
+
+criterion_group! {
+    name = benches;
+    config = support::criterion();
+    targets = welch_at_each_size, window_and_band, freedom_and_tremor
+}
+criterion_main!(benches);

@@ -13,7 +13,7 @@ use realfft::RealFftPlanner;
 /// c(k, l) = Σ_d N_d ( g_d(k − l) + g_d(k + l) ) / K²,   g_d(j) = |Σ_n w[n] w[n + d·step] e^(−2πi·jn/N)|² / (Σ w²)²
 /// ```
 ///
-/// relative to S(k)S(l), where N_d counts the pairs of segments d steps apart in the same span, both
+/// relative to S(k)S(l), where `N_d` counts the pairs of segments d steps apart in the same span, both
 /// ways. A bin has `ν = 2/c(k, k)`, a band `ν = 2 (Σ S)² / Σ S(k) S(l) c(k, l)`. Exact for white noise
 /// without detrending, for any window, overlap, zero padding and number of segments; detrending
 /// matters only in the lowest bins. Segments of different spans are taken as independent.
@@ -39,7 +39,7 @@ use realfft::RealFftPlanner;
 pub struct Freedom {
     segments: usize,
     fft_length: usize,
-    /// For each lag d with a pair of segments: N_d / K², and g_d at bins 0 to N/2.
+    /// For each lag d with a pair of segments: `N_d / K²`, and `g_d` at bins 0 to N/2.
     lags: Vec<(f64, Vec<f64>)>,
 }
 
