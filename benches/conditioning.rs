@@ -1,6 +1,14 @@
 //! Velocity rules, Savitzky–Golay filters, the clock and loss markers, beside reading or copying what
 //! they read and write.
 
+#![expect(
+    clippy::float_cmp,
+    clippy::indexing_slicing,
+    clippy::unwrap_used,
+    unreachable_pub,
+    reason = "a bench asserts exact answers and may panic; the rest is what criterion writes"
+)]
+
 mod support;
 
 use criterion::{Criterion, criterion_group, criterion_main};

@@ -1,6 +1,14 @@
 //! Time stamps onto a uniform grid, and loss markers. The truth is made first (which rows there were,
 //! at which rate), then stamped as odd clocks stamp; the trace must be that truth again.
 
+#![expect(
+    clippy::float_cmp,
+    clippy::indexing_slicing,
+    clippy::single_range_in_vec_init,
+    clippy::unwrap_used,
+    reason = "a test compares exact values and may panic"
+)]
+
 use fixational::conditioning::{
     ClockReport, LossReport, MarkerRule, RateBasis, UniformClock, join_missing, mark_missing,
     uniform_trace,
@@ -87,7 +95,7 @@ fn assert_near(got: f64, expected: f64, relative: f64) {
     assert!((got / expected - 1.0).abs() <= relative, "{got}, expected {expected}");
 }
 
-/// Small reproducible noise in −0.5..0.5 (SplitMix64; Steele, Lea & Flood 2014).
+/// Small reproducible noise in −0.5..0.5 (`SplitMix64`; Steele, Lea & Flood 2014).
 fn noise(seed: u64) -> impl FnMut() -> f64 {
     let mut state = seed;
     move || {
@@ -681,9 +689,9 @@ fn a_repeated_time_keeps_the_first_row() {
 fn near_repeats_shorten_no_period() {
     let mut times = Vec::new();
     for row in (0..1000).chain(4000..5000) {
-        times.push(row as f64 / 512.0);
+        times.push(f64::from(row) / 512.0);
         if row % 33 == 5 + row / 300 % 3 {
-            times.push((row as f64 + 0.03) / 512.0);
+            times.push((f64::from(row) + 0.03) / 512.0);
         }
     }
     let x = vec![0.0; times.len()];

@@ -20,12 +20,12 @@ const REPEATED: &str = "more than one row in twenty repeats the time before it, 
 /// No sample is interpolated or moved off its value: each row becomes the sample of the grid point that
 /// it stands next to, and a grid point without a row is missing (NaN). The first row is sample 0.
 ///
-/// **How many periods lie between two rows.** The median interval says what one period is about. The
-/// mean of all intervals between 0.4 and 1.6 medians is a first period (a clock that counts in
-/// milliseconds stamps 300 Hz as 3, 3, 4 ms, and no single interval is the period). By it rows are
-/// placed, one after another. The least-squares line through the runs between gaps then gives the
-/// period better, and if a gap could be counted otherwise with that, all rows are placed again: a blink
-/// of 3 s is 900 periods of 300 Hz, not 1000 of 3 ms. Row i stands
+/// **How many periods lie between two rows.** The median interval says what one period is about, and
+/// the mean of all intervals up to 1.6 medians is a first period T (a clock that counts in milliseconds
+/// stamps 300 Hz as 3, 3, 4 ms, and no interval is the period). By it rows are placed, one after
+/// another. The least-squares line through the runs between gaps then knows the period better, and if a
+/// gap could be counted otherwise with that, all rows are placed again: a blink of 3 s is 900 periods
+/// of 300 Hz, not 1000 of 3 ms. Row i stands
 ///
 /// ```text
 /// k = ⌊(t[i] − g)/T + ½⌋
@@ -199,7 +199,7 @@ impl UniformClock {
         let median = period::median(&times, repeated)?;
         let period = match self.stated_rate {
             Some(rate) => period::stated(&times, median, rate)?,
-            None => period::first(&times, median),
+            None => period::first(&times, median, repeated),
         };
         // Times near the largest number overflow; nothing can be placed then.
         SamplingRate::new(1.0 / period)?;

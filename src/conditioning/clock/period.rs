@@ -31,19 +31,14 @@ fn sum_within(times: &[f64], range: Range<f64>) -> (f64, f64) {
     steps(times).filter(|step| range.contains(step)).fold((0.0, 0.0), |(t, n), s| (t + s, n + 1.0))
 }
 
-/// A first period: the mean of the intervals that are single periods.
-pub(super) fn first(times: &[f64], median: f64) -> f64 {
-    // Of a clock with two steps a period or more, single periods reach from 2/3 to 3/2 of the median,
-    // double ones from 5/3 on.
-    let (short, long) = (0.4 * median, 1.6 * median);
-    let mut longer = 0.0;
-    let mut others = 0;
+/// A first period: the mean of the intervals that are no longer than one.
+pub(super) fn first(times: &[f64], median: f64, repeated: usize) -> f64 {
+    // Of a clock with two steps a period or more, single periods reach up to 3/2 of the median, double
+    // ones from 5/3 on.
+    let (mut longer, mut others) = (0.0, repeated);
     for step in steps(times) {
-        if step >= long {
+        if step >= 1.6 * median {
             longer += step;
-            others += 1;
-        } else if step < short {
-            // Its time counts, a period it is not: it is one part of one.
             others += 1;
         }
     }
