@@ -127,7 +127,7 @@ fn freedom_and_tremor(c: &mut Criterion) {
     let spectrum = plan.estimate(trace.x()).unwrap();
     assert!(plan.freedom(&whole).unwrap().bin(20) > 400.0);
     c.bench_function("freedom of a band", |b| {
-        b.iter(|| plan.freedom(&whole).unwrap().band(&spectrum, Band::TREMOR, BandEdges::Centres))
+        b.iter(|| plan.freedom(&whole).unwrap().band(&spectrum, Band::TREMOR, BandEdges::Centres));
     });
     let criteria = TremorCriteria::default();
     let segments = criteria.measure(&trace, &Spans::none()).unwrap().segments;

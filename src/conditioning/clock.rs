@@ -20,23 +20,24 @@ const REPEATED: &str = "more than one row in twenty repeats the time before it, 
 /// No sample is interpolated or moved off its value: each row becomes the sample of the grid point that
 /// it stands next to, and a grid point without a row is missing (NaN). The first row is sample 0.
 ///
-/// **How many periods lie between two rows.** The median interval says what one period is about. The
-/// mean of all intervals between 0.4 and 1.6 medians is a first period (a clock that counts in
-/// milliseconds stamps 300 Hz as 3, 3, 4 ms, and no single interval is the period). Longer intervals
-/// are then counted from the shortest to the longest, each with the period that all shorter ones gave:
-/// a blink of 3 s is 900 periods of 300 Hz, not 1000 of 3 ms. Last, rows are placed one after another.
-/// Row i stands
+/// **How many periods lie between two rows.** The median interval says what one period is about, and
+/// the mean of all intervals up to 1.6 medians is a first period T (a clock that counts in milliseconds
+/// stamps 300 Hz as 3, 3, 4 ms, and no interval is the period). By it rows are placed, one after
+/// another. The least-squares line through the runs between gaps then knows the period better, and if a
+/// gap could be counted otherwise with that, all rows are placed again: a blink of 3 s is 900 periods
+/// of 300 Hz, not 1000 of 3 ms. Row i stands
 ///
 /// ```text
 /// k = ⌊(t[i] − g)/T + ½⌋
 /// ```
 ///
-/// periods T after the row before, where g is the time at which the grid expects that row. Afterwards
+/// periods T after the row before, which the grid puts at the time g. Afterwards
 /// `g ← (g + k·T + t[i])/2`: the grid follows the clock, so that a slow drift never skips a sample, and
-/// a late stamp does not shift the rows after it. With T known, each row finds its place as long as every stamp lies
-/// within a quarter of a period of a uniform grid, or every interval within a quarter of a period of a
-/// whole number of periods (half each way is the weight that bears as much of the one as of the other).
-/// A row farther off may take the place of its neighbour, which is then left out, and listed.
+/// a late stamp does not shift the rows after it. With T known, each row finds its place as long as
+/// every stamp lies within a quarter of a period of a uniform grid, or every interval within a quarter
+/// of a period of a whole number of periods (half each way is the weight that bears as much of the one
+/// as of the other). A row farther off may take the place of its neighbour, which is then left out, and
+/// listed.
 ///
 /// **The rate** is 1/median interval if the grid of that period, laid from the first row, stays within
 /// half a sample of every row; otherwise that of the least-squares line of time on grid index.
@@ -198,14 +199,17 @@ impl UniformClock {
         let median = period::median(&times, repeated)?;
         let period = match self.stated_rate {
             Some(rate) => period::stated(&times, median, rate)?,
-            None => period::counted(&times, median),
+            None => period::first(&times, median, repeated),
         };
         // Times near the largest number overflow; nothing can be placed then.
         SamplingRate::new(1.0 / period)?;
 
-        let mut placed = Placement::new(period, median, &times);
-        placed.place(&times, &x, &y)?;
-        check_repeated(&times, placed.repeated.len(), placed.repeats.first)?;
+        let place = |period| Placement::of(&times, &x, &y, period, median);
+        let mut placed = place(period)?;
+        if self.stated_rate.is_none() && placed.may_miscount() {
+            placed = place(placed.fit.period())?;
+        }
+        check_repeated(&times, placed.repeated.len(), || placed.repeats.first)?;
         if self.stated_rate.is_none() {
             placed.check_rhythm(&times)?;
         }
@@ -250,45 +254,55 @@ fn check_positions(rows: usize, x: &[f64], y: &[f64]) -> Result<()> {
     if rows < 2 {
         return Err(Error::TooShort { what: "times", needed: 2, found: rows });
     }
+    // One plain pass over what is nearly always right; the culprit is looked for only if there is one.
+    let wrong =
+        |(x, y): (&f64, &f64)| x.is_infinite() | y.is_infinite() | (x.is_nan() != y.is_nan());
+    if !x.iter().zip(y).fold(false, |any, pair| any | wrong(pair)) {
+        return Ok(());
+    }
     refuse_infinite("x", x)?;
     refuse_infinite("y", y)?;
-    match x.iter().zip(y).position(|(x, y)| x.is_nan() != y.is_nan()) {
-        Some(index) => Err(Error::HalfMissing { index }),
-        None => Ok(()),
-    }
+    let index = x.iter().zip(y).position(wrong).unwrap_or(0);
+    Err(Error::HalfMissing { index })
 }
 
 /// Finite times that never run backward, no interval above `longest_gap`, few repeated; how many.
 fn check_times(times: &[f64], longest_gap: f64) -> Result<usize> {
-    let (mut repeated, mut first) = (0, None);
-    for (row, (&previous, &time)) in (1..).zip(times.iter().zip(times.iter().skip(1))) {
+    // A NaN or an infinity on either side of an interval is outside too.
+    let allowed = 0.0..=longest_gap;
+    let intervals = || times.iter().zip(times.iter().skip(1));
+    let (right, repeated) = intervals().fold((true, 0), |(right, repeated), (previous, time)| {
         let step = time - previous;
-        // A NaN or an infinity on either side fails this too.
-        if !(0.0..=longest_gap).contains(&step) {
-            return Err(if !previous.is_finite() {
-                Error::Clock { why: NOT_FINITE, row: row - 1, time: previous }
+        (right & allowed.contains(&step), repeated + usize::from(step <= 0.0))
+    });
+    if !right {
+        for (row, (&previous, &time)) in (1..).zip(intervals()) {
+            if !previous.is_finite() {
+                return Err(Error::Clock { why: NOT_FINITE, row: row - 1, time: previous });
             } else if !time.is_finite() {
-                Error::Clock { why: NOT_FINITE, row, time }
+                return Err(Error::Clock { why: NOT_FINITE, row, time });
             } else if time < previous {
-                Error::BackwardTime { row, previous, time }
-            } else {
-                Error::Clock { why: LONG_GAP, row, time }
-            });
-        }
-        if step <= 0.0 {
-            repeated += 1;
-            first = first.or(Some(row));
+                return Err(Error::BackwardTime { row, previous, time });
+            } else if time - previous > longest_gap {
+                return Err(Error::Clock { why: LONG_GAP, row, time });
+            }
         }
     }
+    let first = || intervals().position(|(previous, time)| time <= previous).map(|i| i + 1);
     check_repeated(times, repeated, first)?;
     Ok(repeated)
 }
 
-fn check_repeated(times: &[f64], repeated: usize, first: Option<usize>) -> Result<()> {
-    match first.and_then(|row| times.get(row).map(|&time| (row, time))) {
-        Some((row, time)) if repeated > times.len() / 20 => {
-            Err(Error::Clock { why: REPEATED, row, time })
-        }
-        _ => Ok(()),
+fn check_repeated(
+    times: &[f64],
+    repeated: usize,
+    first: impl FnOnce() -> Option<usize>,
+) -> Result<()> {
+    if repeated <= times.len() / 20 {
+        return Ok(());
+    }
+    match first().and_then(|row| times.get(row).map(|&time| (row, time))) {
+        Some((row, time)) => Err(Error::Clock { why: REPEATED, row, time }),
+        None => Ok(()),
     }
 }

@@ -62,18 +62,19 @@ pub fn mark_missing(
         return Err(Error::Parameter { name: "marker", value: marker, allowed });
     }
     let mut report = LossReport { marked: 0, in_one_axis: 0, missing_before: 0 };
+    let either_axis = rule == MarkerRule::EitherAxis;
     for (x, y) in x.iter_mut().zip(y) {
         let (x_marked, y_marked) = (*x == marker, *y == marker);
         let (x_missing, y_missing) = (x.is_nan(), y.is_nan());
         let either = x_marked | y_marked;
         let both = either & (x_marked | x_missing) & (y_marked | y_missing);
-        let lost = both | (either & (rule == MarkerRule::EitherAxis));
+        let lost = both | (either & either_axis);
         report.marked += usize::from(lost);
         report.in_one_axis += usize::from(either & !both);
         report.missing_before += usize::from(x_missing & y_missing);
-        if lost {
-            (*x, *y) = (f64::NAN, f64::NAN);
-        }
+        // Written either way: a branch here would keep the loop from running in lanes.
+        *x = if lost { f64::NAN } else { *x };
+        *y = if lost { f64::NAN } else { *y };
     }
     Ok(report)
 }

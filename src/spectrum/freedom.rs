@@ -125,7 +125,7 @@ impl Freedom {
             *share *= spectrum.values.get(*k).copied().unwrap_or(0.0);
         }
         let sum: f64 = shares.iter().map(|(_, power)| power).sum();
-        if !(sum > 0.0) {
+        if sum <= 0.0 {
             return self.flat_band(spectrum, band, edges);
         }
         // E[Ŝ(k)Ŝ(l)] = S(k)S(l)(1 + c), and so for the sum.

@@ -87,8 +87,9 @@ impl Neighbours {
         self.count += 1.0;
         self.excess += excess;
         self.squares += excess * excess;
-        self.shortest = self.shortest.min(excess);
-        self.longest = self.longest.max(excess);
+        // Plain comparisons: no NaN comes here.
+        self.shortest = if excess < self.shortest { excess } else { self.shortest };
+        self.longest = if excess > self.longest { excess } else { self.longest };
     }
 
     /// Standard deviation, and largest distance from the mean.

@@ -1,6 +1,6 @@
 //! What one period of a clock is, before any row is placed.
 
-use super::REPEATED;
+use super::{REPEATED, elapsed};
 use crate::statistics::median_over;
 use crate::{Error, Result, SamplingRate, Spans};
 use std::ops::Range;
@@ -32,18 +32,18 @@ fn sum_within(times: &[f64], range: Range<f64>) -> (f64, f64) {
     steps(times).filter(|step| range.contains(step)).fold((0.0, 0.0), |(t, n), s| (t + s, n + 1.0))
 }
 
-/// The period that the intervals agree on; the long ones are counted last.
-pub(super) fn counted(times: &[f64], median: f64) -> f64 {
-    // Of a clock with two steps a period or more, single periods reach from 2/3 to 3/2 of the median,
-    // double ones from 5/3 on.
-    let (mut time, mut periods) = sum_within(times, 0.4 * median..1.6 * median);
-    let mut longer: Vec<f64> = steps(times).filter(|&step| step >= 1.6 * median).collect();
-    longer.sort_unstable_by(f64::total_cmp);
-    for step in longer {
-        periods += (step * (periods / time)).round();
-        time += step;
+/// A first period: the mean of the intervals that are no longer than one.
+pub(super) fn first(times: &[f64], median: f64, repeated: usize) -> f64 {
+    // Of a clock with two steps a period or more, single periods reach up to 3/2 of the median, double
+    // ones from 5/3 on.
+    let (mut longer, mut others) = (0.0, repeated);
+    for step in steps(times) {
+        if step >= 1.6 * median {
+            longer += step;
+            others += 1;
+        }
     }
-    time / periods
+    (elapsed(times) - longer) / (times.len() - 1 - others) as f64
 }
 
 /// The stated period, if the clock's own is near it: the median interval, or (a coarse clock skips

@@ -8,7 +8,7 @@ use std::ops::Range;
 /// Missing samples that may be filled in: so many for each row, and so many besides.
 const FILLED_PER_ROW: usize = 7;
 const FILLED_BESIDES: usize = 1 << 22;
-/// A gap of more periods than this starts a new run of the fit.
+/// A gap of so many samples starts a new run of the fit.
 const RUN_ENDS_AFTER: usize = 8;
 
 const MOSTLY_MISSING: &str = "up to here more than 7 samples would be filled in for each row, and \
@@ -33,7 +33,20 @@ pub(super) struct Placement {
 }
 
 impl Placement {
-    pub(super) fn new(period: f64, median: f64, times: &[f64]) -> Self {
+    /// The rows on a grid of `period`, or why they are not to be placed.
+    pub(super) fn of(
+        times: &[f64],
+        x: &[f64],
+        y: &[f64],
+        period: f64,
+        median: f64,
+    ) -> Result<Self> {
+        let mut placed = Self::new(period, median, times);
+        placed.place(times, x, y)?;
+        Ok(placed)
+    }
+
+    fn new(period: f64, median: f64, times: &[f64]) -> Self {
         // A cast of what is too large saturates; `place` refuses what is above the limit.
         let expected = (elapsed(times) / period) as usize;
         let capacity = expected.saturating_add(2).min(times.len() + filling(times.len()));
@@ -52,48 +65,49 @@ impl Placement {
         }
     }
 
-    pub(super) fn place(&mut self, times: &[f64], x: &[f64], y: &[f64]) -> Result<()> {
+    fn place(&mut self, times: &[f64], x: &[f64], y: &[f64]) -> Result<()> {
         let Some(&origin) = times.first() else { return Ok(()) };
         let mut allowed = filling(times.len());
-        let period = self.period;
-        let (mut index, mut grid, mut previous) = (0_usize, 0.0, 0.0);
+        let (period, median) = (self.period, self.median);
+        // What every row adds to stays in registers: locals, and a grid index that is a float.
+        let (mut fit, mut neighbours) = (Fit::new(period), Neighbours::new(period));
+        let (mut index, mut grid, mut previous, mut off_median) = (0.0, 0.0, 0.0, 0.0);
         // Rows `run..row` are neighbours on the grid and not yet copied.
         let mut run = 0;
         for (row, &stamp) in times.iter().enumerate().skip(1) {
             let time = stamp - origin;
             let step = time - grid;
-            let mut periods = 1;
-            if !(step >= 0.5 * period && step < 1.5 * period) {
-                let count = (step / period + 0.5).floor();
-                if count < 1.0 {
-                    self.copy(run..row, x, y);
+            let mut periods = 1.0;
+            if step >= 0.5 * period && step < 1.5 * period {
+                neighbours.add(time - previous);
+            } else {
+                periods = (step / period + 0.5).floor();
+                self.copy(run..row, x, y);
+                if periods < 1.0 {
                     run = row + 1;
-                    self.repeated.push(row);
-                    self.repeats.note(row);
-                    self.skips.interrupt();
+                    self.leave_out(row);
                     continue;
                 }
-                if count - 1.0 > allowed as f64 {
+                run = row;
+                if periods - 1.0 > allowed as f64 {
                     return Err(Error::Clock { why: MOSTLY_MISSING, row, time: stamp });
                 }
-                periods = count as usize;
-                allowed = allowed.saturating_sub(periods - 1);
-                self.copy(run..row, x, y);
-                run = row;
-                self.leave_out(index + 1..index + periods, row);
-                if periods > RUN_ENDS_AFTER {
-                    self.fit.cut((index + periods) as f64, time);
+                let missing = periods as usize - 1;
+                allowed -= missing;
+                self.fill(missing, row);
+                if missing >= RUN_ENDS_AFTER {
+                    fit.cut(index + periods, time);
                 }
-            } else {
-                self.neighbours.add(time - previous);
             }
             index += periods;
-            grid = 0.5 * grid + 0.5 * (time + periods as f64 * period);
+            grid = 0.5 * grid + 0.5 * (time + periods * period);
             previous = time;
-            self.fit.add(index as f64, time);
-            self.off_median = self.off_median.max((time - index as f64 * self.median).abs());
+            fit.add(index, time);
+            let off = (time - index * median).abs();
+            off_median = if off > off_median { off } else { off_median };
         }
         self.copy(run..times.len(), x, y);
+        (self.fit, self.neighbours, self.off_median) = (fit, neighbours, off_median);
         Ok(())
     }
 
@@ -102,19 +116,35 @@ impl Placement {
         self.y.extend_from_slice(y.get(rows).unwrap_or_default());
     }
 
-    /// Fills the samples of `gap`, which ends at `row`.
-    fn leave_out(&mut self, gap: Range<usize>, row: usize) {
-        self.x.resize(gap.end, f64::NAN);
-        self.y.resize(gap.end, f64::NAN);
+    /// The row falls on the grid point of the row before.
+    fn leave_out(&mut self, row: usize) {
+        self.repeated.push(row);
+        self.repeats.note(row);
+        self.skips.interrupt();
+    }
+
+    /// `missing` grid points have no row; `row` stands after them.
+    fn fill(&mut self, missing: usize, row: usize) {
+        let start = self.x.len();
+        let end = start + missing;
+        self.x.resize(end, f64::NAN);
+        self.y.resize(end, f64::NAN);
+        if missing > 0 {
+            self.gaps.push(start..end);
+        }
         self.repeats.interrupt();
-        if gap.len() == 1 {
+        if missing == 1 {
             self.skips.note(row);
         } else {
             self.skips.interrupt();
         }
-        if !gap.is_empty() {
-            self.gaps.push(gap);
-        }
+    }
+
+    /// Whether the fitted period, which no longer gap entered, would shift the end of one by a
+    /// sixteenth of a sample.
+    pub(super) fn may_miscount(&self) -> bool {
+        let longest = self.gaps.iter().map(ExactSizeIterator::len).max().unwrap_or(0);
+        (self.fit.period() / self.period - 1.0).abs() * longest as f64 > 1.0 / 16.0
     }
 
     /// A clock that counts exact periods and skips or repeats one in a steady rhythm may be counting
