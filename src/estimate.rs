@@ -81,6 +81,74 @@ fn check_level(level: f64) -> Result<()> {
     }
 }
 
+/// Fisher's F with fractional degrees of freedom; an infinite second number makes it χ²/ν.
+pub(crate) mod f_distribution {
+    use super::chi_squared_quantile;
+    use statrs::distribution::{Continuous, ContinuousCDF, FisherSnedecor};
+
+    /// Quantile at `0 < p < 1` of F with `nu_1`, `nu_0` > 0 degrees of freedom.
+    ///
+    /// The library's inverse stops early; Newton steps, each tail by its own, bring the rest.
+    pub(crate) fn quantile(nu_1: f64, nu_0: f64, p: f64) -> f64 {
+        if nu_0.is_infinite() {
+            return chi_squared_quantile(nu_1, p) / nu_1;
+        }
+        let Ok(f) = FisherSnedecor::new(nu_1, nu_0) else { return f64::NAN };
+        let mut x = f.inverse_cdf(p);
+        for _ in 0..4 {
+            let excess = if p < 0.5 { f.cdf(x) - p } else { (1.0 - p) - f.sf(x) };
+            let step = excess / f.pdf(x);
+            if step.is_finite() && step < x {
+                x -= step;
+            }
+        }
+        x
+    }
+
+    /// Probability of a value above `x`.
+    pub(crate) fn upper_tail(nu_1: f64, nu_0: f64, x: f64) -> f64 {
+        FisherSnedecor::new(nu_1, nu_0).map_or(f64::NAN, |f| f.sf(x))
+    }
+
+    #[cfg(test)]
+    mod tests {
+        use super::*;
+
+        /// F₀.₉₅ and R_min = F₁₋α(ν₁, ν₀) F₁₋β(ν₀, ν₁), four decimals as printed (methods text, table
+        /// of section 13; derived there), α = 0.05, β = 0.05 and 0.20.
+        #[test]
+        fn quantiles_equal_the_printed_table() {
+            for (nu_1, nu_0, f95, both, loose) in [
+                (10.0, 10.0, 2.9782, 8.8699, 5.1571),
+                (20.0, 20.0, 2.1242, 4.5120, 3.1131),
+                (60.0, 60.0, 1.5343, 2.3541, 1.9089),
+                (60.0, 120.0, 1.4290, 2.0967, 1.7394),
+                (120.0, 120.0, 1.3519, 1.8276, 1.5770),
+                (200.0, 200.0, 1.2626, 1.5942, 1.4224),
+            ] {
+                let critical = quantile(nu_1, nu_0, 0.95);
+                assert!((critical - f95).abs() <= 5e-5, "{nu_1} {nu_0}: {critical}");
+                let limit = critical * quantile(nu_0, nu_1, 0.95);
+                assert!((limit - both).abs() <= 5e-5, "{nu_1} {nu_0}: {limit}");
+                let limit = critical * quantile(nu_0, nu_1, 0.80);
+                assert!((limit - loose).abs() <= 5e-5, "{nu_1} {nu_0}: {limit}");
+                assert!((upper_tail(nu_1, nu_0, critical) - 0.05).abs() < 1e-12);
+                assert!(
+                    (quantile(nu_1, nu_0, 0.05) * quantile(nu_0, nu_1, 0.95) - 1.0).abs() < 1e-10
+                );
+            }
+        }
+
+        /// χ²/ν factors of section 11: ν/χ² at 95 %: 0.720308, 1.482149 for ν = 60.
+        #[test]
+        fn an_infinite_second_number_is_chi_squared() {
+            let infinite = f64::INFINITY;
+            assert!((1.0 / quantile(60.0, infinite, 0.975) - 0.720308).abs() < 5e-7);
+            assert!((1.0 / quantile(60.0, infinite, 0.025) - 1.482149).abs() < 5e-7);
+        }
+    }
+}
+
 /// Quantile of χ² with `dof > 0` degrees of freedom at `0 < p < 1`.
 ///
 /// The library's inverse stops at about ten digits; Newton steps on its distribution function, each

@@ -5,6 +5,10 @@
 //! ([`Tremor::relative_to`]). Drift has power in the band too, and a saccade far more: events are taken
 //! out, with a margin, and each segment's trend before its spectrum.
 
+mod verdict;
+
+pub use verdict::{Judgement, Verdict, VerdictOptions};
+
 use crate::spectrum::{Band, BandEdges, Detrend, Overlap, Spectrum, Welch, WelchOptions, Window};
 use crate::{Error, NotObservable, Result, SamplingRate, Spans, Trace};
 
@@ -124,11 +128,15 @@ impl TremorCriteria {
         let spectrum_y = plan.estimate_spans_with(trace.y(), &clean, &mut scratch)?;
         let x = spectrum_x.band_power(self.band, self.edges)?;
         let y = spectrum_y.band_power(self.band, self.edges)?;
+        let freedom = plan.freedom(&clean)?;
+        let dof_x = freedom.band(&spectrum_x, self.band, self.edges)?;
+        let dof_y = freedom.band(&spectrum_y, self.band, self.edges)?;
         Ok(Tremor {
             criteria: *self,
             x: BandMotion { power: x },
             y: BandMotion { power: y },
             both: BandMotion { power: x + y },
+            degrees_of_freedom: summed_freedom([(x, dof_x), (y, dof_y)]),
             segments: spectrum_x.segments,
             clean_seconds: rate.seconds(clean.samples()),
             used_seconds: rate.seconds(spectrum_x.samples_used),
@@ -224,6 +232,8 @@ pub struct Tremor {
     pub spectrum_x: Spectrum,
     /// Vertical density, deg²/Hz.
     pub spectrum_y: Spectrum,
+    /// Equivalent degrees of freedom of the power of both axes together, which are taken as independent.
+    pub degrees_of_freedom: f64,
     /// Spectral segments averaged.
     pub segments: usize,
     /// The clean samples.
@@ -290,6 +300,13 @@ impl Tremor {
             both: ratio("the still eye's position in the band", self.both, still.both)?,
         })
     }
+}
+
+/// Degrees of freedom of a sum of independent powers (Satterthwaite 1946): `(Σp)² / Σ p²/ν`.
+fn summed_freedom(parts: [(f64, f64); 2]) -> f64 {
+    let sum: f64 = parts.iter().map(|(power, _)| power).sum();
+    let squares: f64 = parts.iter().map(|(power, dof)| power * power / dof).sum();
+    if squares > 0.0 { sum * sum / squares } else { parts.iter().map(|(_, dof)| dof).sum() }
 }
 
 #[cfg(test)]
