@@ -1,7 +1,7 @@
 //! How sure: a value and the interval that holds the truth at a stated level.
 
 use crate::{Error, Result};
-use statrs::distribution::{ChiSquared, Continuous, ContinuousCDF};
+use statrs::distribution::{ChiSquared, Continuous, ContinuousCDF, Normal};
 
 /// A value with its confidence interval.
 ///
@@ -58,6 +58,49 @@ impl Estimate {
             level,
         })
     }
+
+    /// Proportion of `successes` in `trials`, with Wilson's score interval.
+    ///
+    /// ```text
+    /// [ p̂ + z²/2n ± z √( p̂(1 − p̂)/n + z²/4n² ) ] / (1 + z²/n)
+    /// ```
+    ///
+    /// # Errors
+    /// [`Error::Parameter`] unless `successes ≤ trials`, `trials > 0` and `0 < level < 1`.
+    ///
+    /// # Source
+    /// Wilson 1927, Journal of the American Statistical Association 22:209–212.
+    ///
+    /// # Example
+    /// ```
+    /// let seen = fixational::Estimate::proportion(0, 10, 0.95)?;
+    /// assert!(seen.value == 0.0 && seen.lower == 0.0 && (seen.upper - 0.2775).abs() < 5e-5);
+    /// # Ok::<(), fixational::Error>(())
+    /// ```
+    pub fn proportion(successes: usize, trials: usize, level: f64) -> Result<Self> {
+        check_level(level)?;
+        if trials == 0 {
+            return Err(Error::Parameter { name: "trials", value: 0.0, allowed: "at least 1" });
+        }
+        if successes > trials {
+            let (value, allowed) = (successes as f64, "at most the trials");
+            return Err(Error::Parameter { name: "successes", value, allowed });
+        }
+        let (n, p) = (trials as f64, successes as f64 / trials as f64);
+        let z = normal_quantile(0.5 + level / 2.0);
+        let centre = p + z * z / (2.0 * n);
+        let half = z * (p * (1.0 - p) / n + z * z / (4.0 * n * n)).sqrt();
+        let scale = 1.0 + z * z / n;
+        // At 0 and at n one end is exact; rounding must not move it.
+        let lower = if successes == 0 { 0.0 } else { (centre - half) / scale };
+        let upper = if successes == trials { 1.0 } else { (centre + half) / scale };
+        Ok(Self { value: p, lower, upper, level })
+    }
+}
+
+/// Quantile of the standard normal distribution at `0 < p < 1`.
+pub(crate) fn normal_quantile(p: f64) -> f64 {
+    Normal::standard().inverse_cdf(p)
 }
 
 /// The χ² interval of a variance or power with `dof` equivalent degrees of freedom:
@@ -114,7 +157,7 @@ pub(crate) mod f_distribution {
     mod tests {
         use super::*;
 
-        /// F₀.₉₅ and R_min = F₁₋α(ν₁, ν₀) F₁₋β(ν₀, ν₁), four decimals as printed (methods text, table
+        /// F₀.₉₅ and `R_min` = F₁₋α(ν₁, ν₀) F₁₋β(ν₀, ν₁), four decimals as printed (methods text, table
         /// of section 13; derived there), α = 0.05, β = 0.05 and 0.20.
         #[test]
         fn quantiles_equal_the_printed_table() {

@@ -27,6 +27,7 @@ mod input;
 pub mod instrument;
 #[cfg(feature = "interchange")]
 pub mod interchange;
+mod random;
 pub mod recording;
 pub mod simulation;
 pub mod spectrum;

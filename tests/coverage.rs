@@ -3,6 +3,8 @@
 //! Fixed seeds. By default a reduced number of replicates; `FIXATIONAL_COVERAGE=full cargo test --release
 //! --test coverage -- --nocapture` runs all and prints the table of the contributor guide.
 
+#![expect(clippy::expect_used, reason = "a test that cannot go on has failed")]
+
 use fixational::simulation::{Blinks, Drift, Instrument, Microsaccades, Session, Tremor};
 use fixational::spectrum::{Band, BandEdges, Welch, WelchOptions};
 use fixational::tremor::{TremorCriteria, Verdict, VerdictOptions};

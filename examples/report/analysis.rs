@@ -6,16 +6,22 @@ use crate::source::Source;
 use fixational::events::{
     Detections, DispersionThreshold, Event, MicrosaccadeCriteria, Microsaccades, VelocityThreshold,
 };
-use fixational::instrument::{Precision, precision};
+use fixational::instrument::{
+    FalseAlarms, Precision, Recovery, RecoveryOptions, Surrogate, false_alarms,
+    false_alarms_by_surrogates, precision, recovery,
+};
 use fixational::stability::{AveragingTimes, Deviations, Series, Statistic, deviation_over_spans};
 use fixational::statistics::median;
-use fixational::tremor::{StillRatio, Tremor, TremorCriteria};
+use fixational::tremor::{Judgement, StillRatio, Tremor, TremorCriteria, Verdict, VerdictOptions};
 use fixational::{Error, Result, Spans, Trace};
 
 /// Probability of the ellipse whose area is reported.
 pub const BCEA_PROBABILITY: f64 = 0.682;
 /// Level of the reported intervals.
 pub const LEVEL: f64 = 0.95;
+
+/// Thresholds at which false alarms are counted.
+pub const LAMBDAS: [f64; 9] = [2.0, 2.5, 3.0, 3.5, 4.0, 4.5, 5.0, 5.5, 6.0];
 
 pub struct Analysis {
     pub precision: Result<Precision>,
@@ -26,7 +32,11 @@ pub struct Analysis {
     pub band: TremorCriteria,
     pub tremor: Result<Tremor>,
     /// The still eye, by the same criteria, and the ratio to it.
-    pub still_tremor: Option<Result<(Tremor, StillRatio)>>,
+    pub still_tremor: Option<Result<(Tremor, StillRatio, Judgement)>>,
+    /// False alarms over [`LAMBDAS`]: on the still eye, or on surrogates where there is none.
+    pub false_alarms: Option<Vec<FalseAlarms>>,
+    /// How small a microsaccade could be and still be found in this recording.
+    pub recovery: Option<Recovery>,
     pub stability: Result<[Deviations; 2]>,
     pub still_stability: Option<Result<[Deviations; 2]>>,
 }
@@ -46,11 +56,12 @@ pub fn analyse(trace: &Trace, still: Option<&Trace>, options: &Options) -> Resul
     let band = TremorCriteria::default();
     let tremor = answer(band.measure(trace, &events))?;
     let still_tremor = match (still, &tremor) {
-        (Some(still), Ok(tremor)) => Some(answer(
-            band.measure(still, &Spans::none())
-                .and_then(|still| Ok((tremor.relative_to(&still)?, still)))
-                .map(|(ratio, still)| (still, ratio)),
-        )?),
+        (Some(still), Ok(tremor)) => {
+            Some(answer(band.measure(still, &Spans::none()).and_then(|still| {
+                let judged = tremor.judge(&still, VerdictOptions::default())?;
+                Ok((tremor.relative_to(&still)?, judged, still))
+            }))?)
+        }
         _ => None,
     };
     Ok(Analysis {

@@ -1,5 +1,5 @@
-use super::random::{Draws, Stream};
 use super::{renewal, within};
+use crate::random::{Draws, Stream};
 use crate::{Error, Result, SamplingRate, Spans};
 
 /// Blinks: stretches of missing samples. Nothing else is changed: lids that half cover the eye are not

@@ -1,5 +1,5 @@
-use super::random::{Draws, Stream};
 use super::within;
+use crate::random::{Draws, Stream};
 use crate::{Result, SamplingRate, Trace};
 
 /// Drift: each axis wanders on its own, as a random walk without end.

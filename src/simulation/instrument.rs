@@ -1,5 +1,5 @@
-use super::random::{Draws, Stream};
 use super::within;
+use crate::random::{Draws, Stream};
 use crate::{Error, Result, SamplingRate, Spans, Trace};
 
 /// The instrument: white Gaussian noise, then steps.

@@ -1,6 +1,6 @@
 use super::blinks::first_sample;
-use super::random::{Draws, Stream};
 use super::{SaccadeShape, TrueSaccade, renewal, within};
+use crate::random::{Draws, Stream};
 use crate::{Error, Result, SamplingRate, Spans, Trace};
 use statrs::function::erf::{erfc, erfc_inv};
 use std::f64::consts::{FRAC_1_SQRT_2, SQRT_2};

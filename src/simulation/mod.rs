@@ -26,7 +26,6 @@ mod blinks;
 mod drift;
 mod instrument;
 mod microsaccades;
-mod random;
 mod renewal;
 mod saccade;
 mod session;

@@ -1,6 +1,6 @@
 //! Times of events that need a rest after each: a dead time, then a wait of constant hazard.
 
-use super::random::Draws;
+use crate::random::Draws;
 
 /// Onset times, s, of a stationary renewal process of `rate` events a second, in order and without end.
 ///
@@ -37,7 +37,7 @@ pub(super) fn onsets(rate: f64, dead_time: f64, mut draws: Draws) -> impl Iterat
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::simulation::random::Stream;
+    use crate::random::Stream;
 
     fn draws(seed: u64) -> Draws {
         Draws::new(seed, Stream::SaccadeTimes)

@@ -1,7 +1,7 @@
-use super::random::Stream;
 use super::{
     Blinks, Drift, Instrument, Microsaccades, Simulated, SimulatedEyes, Tremor, Truth, within,
 };
+use crate::random::Stream;
 use crate::{Binocular, Error, Result, SamplingRate, Trace};
 
 /// A session with known truth: one minute at 1 kHz, unless told otherwise.

@@ -1,5 +1,5 @@
-use super::random::{Draws, Stream};
 use super::within;
+use crate::random::{Draws, Stream};
 use crate::{Error, Result, SamplingRate, Trace};
 use std::f64::consts::{PI, TAU};
 

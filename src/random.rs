@@ -17,6 +17,8 @@ pub(crate) enum Stream {
     RightNoise = 8,
     LeftStill = 9,
     RightStill = 10,
+    Surrogates = 11,
+    Insertions = 12,
 }
 
 /// Random numbers of one stream: the cipher `ChaCha` with eight rounds, whose key is the seed (eight
@@ -42,6 +44,19 @@ impl Draws {
     /// Uniform in `[0, 1)`: the upper 53 bits of a draw.
     pub(crate) fn uniform(&mut self) -> f64 {
         (self.0.next_u64() >> 11) as f64 / 9_007_199_254_740_992.0
+    }
+
+    /// A whole number below `n`, each as likely (to 2⁻⁵³); 0 if `n` is.
+    pub(crate) fn below(&mut self, n: usize) -> usize {
+        ((self.uniform() * n as f64) as usize).min(n.saturating_sub(1))
+    }
+
+    /// Puts `values` into random order (Fisher & Yates).
+    pub(crate) fn shuffle(&mut self, values: &mut [f64]) {
+        for i in (1..values.len()).rev() {
+            let other = self.below(i + 1);
+            values.swap(i, other);
+        }
     }
 
     /// Normal, mean 0, standard deviation 1 (ziggurat of Doornik 2005).
