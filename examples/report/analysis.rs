@@ -56,13 +56,24 @@ pub fn analyse(trace: &Trace, still: Option<&Trace>, options: &Options) -> Resul
     let band = TremorCriteria::default();
     let tremor = answer(band.measure(trace, &events))?;
     let still_tremor = match (still, &tremor) {
-        (Some(still), Ok(tremor)) => {
-            Some(answer(band.measure(still, &Spans::none()).and_then(|still| {
-                let judged = tremor.judge(&still, VerdictOptions::default())?;
-                Ok((tremor.relative_to(&still)?, judged, still))
-            }))?)
-        }
+        (Some(still), Ok(tremor)) => Some(answer(against_still(tremor, still, band))?),
         _ => None,
+    };
+    let mut lambdas = LAMBDAS.to_vec();
+    if !lambdas.contains(&options.lambda) {
+        lambdas.push(options.lambda);
+        lambdas.sort_by(f64::total_cmp);
+    }
+    let false_alarms = match still {
+        Some(still) => false_alarms(criteria, still, &lambdas, LEVEL),
+        None => {
+            let (kind, repeats, seed) = (Surrogate::AmplitudeAdjusted, 10, 1);
+            false_alarms_by_surrogates(criteria, trace, kind, repeats, seed, &lambdas, LEVEL)
+        }
+    };
+    let recovery = match &microsaccades {
+        Ok(found) => recovery(criteria, trace, found, &RecoveryOptions::default()).ok(),
+        Err(_) => None,
     };
     Ok(Analysis {
         precision: answer(precision(trace))?,
@@ -73,9 +84,22 @@ pub fn analyse(trace: &Trace, still: Option<&Trace>, options: &Options) -> Resul
         band,
         tremor,
         still_tremor,
+        false_alarms: false_alarms.ok(),
+        recovery,
         stability: stability(trace),
         still_stability: still.map(stability),
     })
+}
+
+fn against_still(
+    tremor: &Tremor,
+    still: &Trace,
+    band: TremorCriteria,
+) -> Result<(Tremor, StillRatio, Judgement)> {
+    let still = band.measure(still, &Spans::none())?;
+    let judged = tremor.judge(&still, VerdictOptions::default())?;
+    let ratio = tremor.relative_to(&still)?;
+    Ok((still, ratio, judged))
 }
 
 /// Separates 'this recording cannot say' from 'this was asked wrongly'.
@@ -145,6 +169,13 @@ impl Analysis {
                 median_fixation_s: median_fixation(&self.by_dispersion.1),
             },
             tremor: self.tremor_block(),
+            false_alarms: self.false_alarms.as_ref().map(|curve| json::FalseAlarms {
+                on: if self.still_stability.is_some() { "still eye" } else { "surrogates" },
+                lambda: curve.iter().map(|point| point.lambda).collect(),
+                rate_hz: curve.iter().map(|point| point.rate.value).collect(),
+                rate_interval_hz: curve.iter().map(|p| [p.rate.lower, p.rate.upper]).collect(),
+            }),
+            recovery: self.recovery.as_ref().map(recovery_block),
             stability: self.stability.as_ref().ok().map(stability_block).unwrap_or_default(),
         }
     }
@@ -183,22 +214,46 @@ impl Analysis {
         json::Tremor {
             band_hz: [self.band.band.low(), self.band.band.high()],
             rms_arcmin: tremor.map(|t| t.both.rms_arcmin()),
-            still_rms_arcmin: still.map(|(s, _)| s.both.rms_arcmin()),
-            ratio: still.map(|(_, r)| r.both.rms),
+            still_rms_arcmin: still.map(|(s, ..)| s.both.rms_arcmin()),
+            ratio: still.map(|(_, r, _)| r.both.rms),
+            verdict: still.map(|(.., j)| match j.verdict {
+                Verdict::Resolved => "resolved",
+                _ => "unresolved",
+            }),
+            p_value: still.map(|(.., j)| j.p_value),
+            power_ratio_interval: still.map(|(.., j)| [j.ratio.lower, j.ratio.upper]),
+            excess_rms_arcsec: still.map(|(.., j)| j.excess_rms_arcsec.value),
+            excess_rms_interval_arcsec: still
+                .map(|(.., j)| [j.excess_rms_arcsec.lower, j.excess_rms_arcsec.upper]),
+            decision_threshold_arcsec: still.map(|(.., j)| j.decision_threshold_arcsec),
+            detection_limit_arcsec: still.map(|(.., j)| j.detection_limit_arcsec),
             x: json::TremorAxis {
                 rms_arcmin: tremor.map(|t| t.x.rms_arcmin()),
-                still_rms_arcmin: still.map(|(s, _)| s.x.rms_arcmin()),
-                ratio: still.map(|(_, r)| r.x.rms),
+                still_rms_arcmin: still.map(|(s, ..)| s.x.rms_arcmin()),
+                ratio: still.map(|(_, r, _)| r.x.rms),
             },
             y: json::TremorAxis {
                 rms_arcmin: tremor.map(|t| t.y.rms_arcmin()),
-                still_rms_arcmin: still.map(|(s, _)| s.y.rms_arcmin()),
-                ratio: still.map(|(_, r)| r.y.rms),
+                still_rms_arcmin: still.map(|(s, ..)| s.y.rms_arcmin()),
+                ratio: still.map(|(_, r, _)| r.y.rms),
             },
             clean_s: tremor.map(|t| t.clean_seconds),
             segments: tremor.map(|t| t.segments),
             not_observable: self.tremor.as_ref().err().map(ToString::to_string),
         }
+    }
+}
+
+fn recovery_block(seen: &Recovery) -> json::Recovery {
+    let interval = |p: &fixational::Estimate| [p.lower, p.upper];
+    json::Recovery {
+        amplitude_deg: seen.points.iter().map(|point| point.amplitude).collect(),
+        probability: seen.points.iter().map(|point| point.probability.value).collect(),
+        probability_interval: seen.points.iter().map(|p| interval(&p.probability)).collect(),
+        half_deg: seen.half.map(|half| half.value),
+        half_interval_deg: seen.half.as_ref().map(interval),
+        nearly_all_deg: seen.nearly_all.map(|most| most.value),
+        nearly_all_interval_deg: seen.nearly_all.as_ref().map(interval),
     }
 }
 

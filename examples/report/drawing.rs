@@ -51,7 +51,7 @@ pub fn draw(
             inner.map(|(f, (x, y))| (f, x + y)).unzip()
         };
         let eye = both(&tremor.spectrum_x, &tremor.spectrum_y);
-        let still = still.map(|(still, _)| both(&still.spectrum_x, &still.spectrum_y));
+        let still = still.map(|(still, ..)| both(&still.spectrum_x, &still.spectrum_y));
         let curve = |name, still, (x, y): &(Vec<f64>, Vec<f64>)| Curve {
             name,
             axis: Axis::Both,
@@ -64,6 +64,35 @@ pub fn draw(
         let band = [a.band.band.low(), a.band.band.high()];
         let title = format!("Spectrum, both axes; shaded {}–{} Hz", band[0], band[1]);
         figures::spectrum(&file("spectrum"), &title, band, &curves)?;
+    }
+
+    if let Some(curve) = &a.false_alarms {
+        let lambda: Vec<f64> = curve.iter().map(|point| point.lambda).collect();
+        let rate: Vec<[f64; 3]> =
+            curve.iter().map(|p| [p.rate.lower, p.rate.value, p.rate.upper]).collect();
+        let on = if source.still.is_some() { "a still eye" } else { "surrogates" };
+        let title = format!("False alarms on {on}");
+        let found = a.microsaccades.as_ref().ok().map(|found| (found.lambda, found.rate()));
+        figures::false_alarms(&file("false_alarms"), &title, &lambda, &rate, found)?;
+    }
+    if let Some(seen) = &a.recovery {
+        let points: Vec<(f64, [f64; 3])> = seen
+            .points
+            .iter()
+            .map(|p| {
+                (
+                    60.0 * p.amplitude,
+                    [p.probability.lower, p.probability.value, p.probability.upper],
+                )
+            })
+            .collect();
+        let fitted = |arcmin: f64| seen.probability(arcmin / 60.0);
+        figures::recovery(
+            &file("recovery"),
+            "Microsaccades of known size, found again",
+            &points,
+            fitted,
+        )?;
     }
 
     let mut curves = Vec::new();

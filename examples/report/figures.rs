@@ -229,6 +229,78 @@ pub fn allan(path: &Path, title: &str, curves: &[Curve]) -> Drawn {
     Ok(())
 }
 
+/// Rate of false alarms over λ with intervals, and the rate that was found at its λ.
+pub fn false_alarms(
+    path: &Path,
+    title: &str,
+    lambda: &[f64],
+    rate: &[[f64; 3]],
+    found: Option<(f64, f64)>,
+) -> Drawn {
+    let root = canvas(path, (640, 520))?;
+    let largest = found.map_or(0.0, |found| found.1);
+    let smallest = rate.iter().map(|r| r[2]).fold(f64::INFINITY, f64::min);
+    let y =
+        decades(rate.iter().flatten().copied().chain([largest]).filter(|r| *r > 0.2 * smallest));
+    let x = spread(lambda.iter().copied().chain(found.map(|found| found.0)));
+    let mut chart = ChartBuilder::on(&root)
+        .caption(title, (FONT, 18).into_font().color(&INK))
+        .margin(14)
+        .x_label_area_size(44)
+        .y_label_area_size(64)
+        .build_cartesian_2d(x, y.clone().log_scale())?;
+    mesh(&mut chart, "λ", "events a second")?;
+    let bars = lambda.iter().zip(rate).map(|(l, [low, _, high])| {
+        PathElement::new([(*l, low.max(y.start)), (*l, high.max(y.start))], GREY.stroke_width(2))
+    });
+    chart
+        .draw_series(bars)?
+        .label("false alarms, 95 % interval")
+        .legend(|(x, y)| PathElement::new([(x, y), (x + 20, y)], GREY.stroke_width(2)));
+    let dots = lambda.iter().zip(rate).filter(|(_, r)| r[1] > 0.0);
+    chart.draw_series(dots.map(|(l, r)| Circle::new((*l, r[1]), 3, GREY.filled())))?;
+    if let Some(found) = found {
+        chart
+            .draw_series(std::iter::once(TriangleMarker::new(found, 7, BLUE.filled())))?
+            .label("found in the recording")
+            .legend(|(x, y)| TriangleMarker::new((x + 10, y), 6, BLUE.filled()));
+    }
+    legend(&mut chart, SeriesLabelPosition::UpperRight)?;
+    root.present()?;
+    Ok(())
+}
+
+/// Share of known movements that were found again over their amplitude, with intervals and the fitted
+/// curve.
+pub fn recovery(
+    path: &Path,
+    title: &str,
+    points: &[(f64, [f64; 3])],
+    fitted: impl Fn(f64) -> Option<f64>,
+) -> Drawn {
+    let root = canvas(path, (640, 520))?;
+    let x = extent(points.iter().map(|point| point.0));
+    let mut chart = ChartBuilder::on(&root)
+        .caption(title, (FONT, 18).into_font().color(&INK))
+        .margin(14)
+        .x_label_area_size(44)
+        .y_label_area_size(64)
+        .build_cartesian_2d((x.start / 1.1..x.end * 1.1).log_scale(), -0.02..1.02)?;
+    mesh(&mut chart, "amplitude (arcmin)", "share found")?;
+    let curve = (0..=200).filter_map(|k| {
+        let amplitude = x.start * (x.end / x.start).powf(f64::from(k) / 200.0);
+        fitted(amplitude).map(|p| (amplitude, p))
+    });
+    chart.draw_series(LineSeries::new(curve, VERMILION.stroke_width(2)))?;
+    chart.draw_series(points.iter().map(|(amplitude, [low, _, high])| {
+        PathElement::new([(*amplitude, *low), (*amplitude, *high)], BLUE.stroke_width(2))
+    }))?;
+    let dot = |(amplitude, p): &(f64, [f64; 3])| Circle::new((*amplitude, p[1]), 4, BLUE.filled());
+    chart.draw_series(points.iter().map(dot))?;
+    root.present()?;
+    Ok(())
+}
+
 type Chart<'a, 'b, X, Y> = ChartContext<'a, SVGBackend<'b>, Cartesian2d<X, Y>>;
 
 fn mesh<X, Y>(chart: &mut Chart<'_, '_, X, Y>, x: &str, y: &str) -> Drawn

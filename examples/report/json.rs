@@ -29,6 +29,8 @@ pub struct Blocks {
     pub velocity_threshold: VelocityThreshold,
     pub dispersion_threshold: DispersionThreshold,
     pub tremor: Tremor,
+    pub false_alarms: Option<FalseAlarms>,
+    pub recovery: Option<Recovery>,
     pub stability: Stability,
 }
 
@@ -102,6 +104,13 @@ pub struct Tremor {
     pub rms_arcmin: Option<f64>,
     pub still_rms_arcmin: Option<f64>,
     pub ratio: Option<f64>,
+    pub verdict: Option<&'static str>,
+    pub p_value: Option<f64>,
+    pub power_ratio_interval: Option<[f64; 2]>,
+    pub excess_rms_arcsec: Option<f64>,
+    pub excess_rms_interval_arcsec: Option<[f64; 2]>,
+    pub decision_threshold_arcsec: Option<f64>,
+    pub detection_limit_arcsec: Option<f64>,
     pub x: TremorAxis,
     pub y: TremorAxis,
     pub clean_s: Option<f64>,
@@ -115,6 +124,25 @@ pub struct TremorAxis {
     pub rms_arcmin: Option<f64>,
     pub still_rms_arcmin: Option<f64>,
     pub ratio: Option<f64>,
+}
+
+#[derive(Debug, Clone, Serialize)]
+pub struct FalseAlarms {
+    pub on: &'static str,
+    pub lambda: Vec<f64>,
+    pub rate_hz: Vec<f64>,
+    pub rate_interval_hz: Vec<[f64; 2]>,
+}
+
+#[derive(Debug, Clone, Serialize)]
+pub struct Recovery {
+    pub amplitude_deg: Vec<f64>,
+    pub probability: Vec<f64>,
+    pub probability_interval: Vec<[f64; 2]>,
+    pub half_deg: Option<f64>,
+    pub half_interval_deg: Option<[f64; 2]>,
+    pub nearly_all_deg: Option<f64>,
+    pub nearly_all_interval_deg: Option<[f64; 2]>,
 }
 
 #[derive(Debug, Clone, Default, Serialize)]

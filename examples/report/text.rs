@@ -3,8 +3,10 @@
 use crate::analysis::{Analysis, BCEA_PROBABILITY, LEVEL, both};
 use fixational::Trace;
 use fixational::events::{BinocularAgreement, Detections, Event};
+use fixational::instrument::FalseAlarms;
 use fixational::stability::Deviations;
 use fixational::statistics::{median, quantile};
+use fixational::tremor::{Judgement, Verdict};
 use std::fmt::Write;
 
 /// All sections for one eye.
@@ -104,6 +106,26 @@ fn microsaccades(page: &mut Page, a: &Analysis) {
         let speeds = quartiles.map(|speed| digits(speed, 3)).join(", ");
         page.row("", &format!("peak velocity quartiles {speeds} deg/s"));
     }
+    let own = |point: &&FalseAlarms| (point.lambda - found.lambda).abs() < 1e-12;
+    if let Some(point) = a.false_alarms.as_ref().and_then(|curve| curve.iter().find(own)) {
+        let on = if a.still_stability.is_some() { "the still eye" } else { "surrogates" };
+        let (value, lower, upper) = (point.rate.value, point.rate.lower, point.rate.upper);
+        let lambda = point.lambda;
+        page.row(
+            "",
+            &format!(
+                "by chance {value:.2} a second [{lower:.2}, {upper:.2}] (λ = {lambda}, on {on})"
+            ),
+        );
+    }
+    if let Some((half, most)) = a.recovery.as_ref().and_then(|seen| seen.half.zip(seen.nearly_all))
+    {
+        let sizes = [half.value, most.value].map(angle);
+        page.row(
+            "",
+            &format!("half of those of {} would be found, 95 % of {}", sizes[0], sizes[1]),
+        );
+    }
     let cut = found.events.iter().filter(|event| event.touches_gap || event.touches_end).count();
     if cut > 0 {
         page.row("", &format!("{cut} of them touch a gap or an end of the recording"));
@@ -147,18 +169,53 @@ fn tremor(page: &mut Page, a: &Analysis) {
             tremor.segments,
         ),
     );
-    let still = match &a.still_tremor {
-        None => "no still eye to compare with: this may all be the instrument's noise".into(),
-        Some(Err(error)) => format!("still eye: {error}"),
-        Some(Ok((still, ratio))) => format!(
-            "still eye {} RMS: {:.3} × (horizontal {:.3} ×, vertical {:.3} ×)",
-            angle(still.both.rms()),
-            ratio.both.rms,
-            ratio.x.rms,
-            ratio.y.rms,
+    match &a.still_tremor {
+        None => {
+            page.row("", "no still eye to compare with: this may all be the instrument's noise");
+        }
+        Some(Err(error)) => page.row("", &format!("still eye: {error}")),
+        Some(Ok((still, ratio, judged))) => {
+            page.row(
+                "",
+                &format!(
+                    "still eye {} RMS: {:.3} × (horizontal {:.3} ×, vertical {:.3} ×)",
+                    angle(still.both.rms()),
+                    ratio.both.rms,
+                    ratio.x.rms,
+                    ratio.y.rms,
+                ),
+            );
+            page.row("", &verdict(judged));
+        }
+    }
+}
+
+fn verdict(judged: &Judgement) -> String {
+    let p = judged.p_value;
+    let p = if p < 1e-4 { "p < 0.0001".into() } else { format!("p = {p:.4}") };
+    let power = judged.ratio;
+    let limit = format!(
+        "this recording would have shown {}″ or more in {:.0} % of cases",
+        digits(judged.detection_limit_arcsec, 2),
+        100.0 * (1.0 - judged.options.miss),
+    );
+    match judged.verdict {
+        Verdict::Resolved => {
+            let excess = judged.excess_rms_arcsec;
+            format!(
+                "resolved: {:.2} × the still eye's power (F test {p}); {}″ [{}, {}] RMS beyond it, of \
+                 which drift may have a share; {limit}",
+                power.value,
+                digits(excess.value, 2),
+                digits(excess.lower, 2),
+                digits(excess.upper, 2),
+            )
+        }
+        _ => format!(
+            "not resolved: {:.2} × the still eye's power (F test {p}); {limit}",
+            power.value
         ),
-    };
-    page.row("", &still);
+    }
 }
 
 fn stability(page: &mut Page, a: &Analysis) {
