@@ -11,6 +11,7 @@ use fixational::events::{
     DispersionThreshold, EllipticThreshold, Event, MicrosaccadeCriteria, VelocityThreshold,
     binocular_events, spans_of,
 };
+use fixational::simulation::{Blinks, Microsaccades, Session};
 use fixational::{Error, SamplingRate, Spans, Trace};
 use proptest::prelude::*;
 use std::ops::Range;
@@ -410,4 +411,35 @@ fn absurd_settings_are_refused_by_name() {
     ));
     let none = criteria.find_in(&step, &Spans::none()).unwrap_err();
     assert!(matches!(none, Error::AllMissing { .. }));
+}
+
+/// Common practice: in free viewing the eyes make one to three larger movements a second. A simulated
+/// minute of them, with fixations of a few hundred milliseconds, must come out of both classic rules so.
+#[test]
+fn free_viewing_has_one_to_three_larger_movements_a_second() {
+    let jumps = Microsaccades::default()
+        .rate(2.0)
+        .dead_time(0.15)
+        .median_amplitude(4.0)
+        .smallest(1.5)
+        .largest(12.0)
+        .direction_sd(60.0);
+    let session = Session::default().microsaccades(jumps).blinks(Blinks::default().per_minute(0.0));
+    let simulated = session.simulate().unwrap();
+    let seconds = simulated.recording.duration();
+    let by_velocity = VelocityThreshold::default().find(&simulated.recording).unwrap();
+    let by_dispersion = DispersionThreshold::default().find(&simulated.recording).unwrap();
+    let truth = simulated.truth.saccades.len();
+    for (rule, movements) in [
+        ("velocity", by_velocity.saccades.len()),
+        ("dispersion", by_dispersion.fixations.len() - 1),
+        ("truth", truth),
+    ] {
+        let rate = movements as f64 / seconds;
+        assert!((1.0..=3.0).contains(&rate), "{rule}: {rate} a second");
+    }
+    assert_eq!(by_velocity.saccades.len(), truth, "each is one movement");
+    for (found, made) in by_velocity.saccades.iter().zip(&simulated.truth.saccades) {
+        assert!(found.samples.start < made.samples.end && made.samples.start < found.samples.end);
+    }
 }
