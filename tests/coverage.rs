@@ -40,7 +40,9 @@ fn tremor_false_alarms() {
     let mut rng = ChaCha8Rng::seed_from_u64(11);
     let criteria = TremorCriteria::default();
     for n in [2000, 8000] {
-        let mut resolved = 0;
+        let (mut resolved, mut by_sides) = (0, 0);
+        let sides =
+            (Band::new(20.0, 36.0).expect("a band"), Band::new(104.0, 160.0).expect("a band"));
         for _ in 0..replicates() {
             let mut measure = |n: usize| {
                 let (x, y) = (normals(&mut rng, n, 0.005), normals(&mut rng, n, 0.005));
@@ -50,8 +52,17 @@ fn tremor_false_alarms() {
             let (eye, still) = (measure(n), measure(4000));
             let judged = eye.judge(&still, VerdictOptions::default()).expect("judged");
             resolved += usize::from(judged.verdict == Verdict::Resolved);
+            let judged =
+                eye.judge_by_sides(sides.0, sides.1, VerdictOptions::default()).expect("judged");
+            by_sides += usize::from(judged.verdict == Verdict::Resolved);
         }
         check_share(&format!("false alarms, {n} samples"), resolved, replicates(), 0.04..=0.06);
+        check_share(
+            &format!("false alarms by sides, {n} samples"),
+            by_sides,
+            replicates(),
+            0.04..=0.06,
+        );
     }
 }
 

@@ -10,6 +10,7 @@ use fixational::instrument::{
     FalseAlarms, Precision, Recovery, RecoveryOptions, Surrogate, false_alarms,
     false_alarms_by_surrogates, precision, recovery,
 };
+use fixational::spectrum::Band;
 use fixational::stability::{AveragingTimes, Deviations, Series, Statistic, deviation_over_spans};
 use fixational::statistics::median;
 use fixational::tremor::{Judgement, StillRatio, Tremor, TremorCriteria, Verdict, VerdictOptions};
@@ -20,6 +21,8 @@ pub const BCEA_PROBABILITY: f64 = 0.682;
 /// Level of the reported intervals.
 pub const LEVEL: f64 = 0.95;
 
+/// Bands on both sides of the tremor band, Hz.
+pub const SIDES: [[f64; 2]; 2] = [[20.0, 36.0], [104.0, 160.0]];
 /// Thresholds at which false alarms are counted.
 pub const LAMBDAS: [f64; 9] = [2.0, 2.5, 3.0, 3.5, 4.0, 4.5, 5.0, 5.5, 6.0];
 
@@ -33,6 +36,8 @@ pub struct Analysis {
     pub tremor: Result<Tremor>,
     /// The still eye, by the same criteria, and the ratio to it.
     pub still_tremor: Option<Result<(Tremor, StillRatio, Judgement)>>,
+    /// Without a still eye: the band against a floor between [`SIDES`].
+    pub by_sides: Option<Judgement>,
     /// False alarms over [`LAMBDAS`]: on the still eye, or on surrogates where there is none.
     pub false_alarms: Option<Vec<FalseAlarms>>,
     /// How small a microsaccade could be and still be found in this recording.
@@ -57,6 +62,13 @@ pub fn analyse(trace: &Trace, still: Option<&Trace>, options: &Options) -> Resul
     let tremor = answer(band.measure(trace, &events))?;
     let still_tremor = match (still, &tremor) {
         (Some(still), Ok(tremor)) => Some(answer(against_still(tremor, still, band))?),
+        _ => None,
+    };
+    let by_sides = match (still, &tremor) {
+        (None, Ok(tremor)) => {
+            let [below, above] = SIDES.map(|[low, high]| Band::new(low, high));
+            tremor.judge_by_sides(below?, above?, VerdictOptions::default()).ok()
+        }
         _ => None,
     };
     let mut lambdas = LAMBDAS.to_vec();
@@ -84,6 +96,7 @@ pub fn analyse(trace: &Trace, still: Option<&Trace>, options: &Options) -> Resul
         band,
         tremor,
         still_tremor,
+        by_sides,
         false_alarms: false_alarms.ok(),
         recovery,
         stability: stability(trace),
@@ -211,22 +224,28 @@ impl Analysis {
     fn tremor_block(&self) -> json::Tremor {
         let tremor = self.tremor.as_ref().ok();
         let still = self.still_tremor.as_ref().and_then(|still| still.as_ref().ok());
+        let judged = still.map(|(.., judged)| judged).or(self.by_sides.as_ref());
         json::Tremor {
             band_hz: [self.band.band.low(), self.band.band.high()],
             rms_arcmin: tremor.map(|t| t.both.rms_arcmin()),
             still_rms_arcmin: still.map(|(s, ..)| s.both.rms_arcmin()),
             ratio: still.map(|(_, r, _)| r.both.rms),
-            verdict: still.map(|(.., j)| match j.verdict {
+            judged_against: match (judged, still) {
+                (None, _) => None,
+                (_, Some(_)) => Some("still eye"),
+                (_, None) => Some("side bands"),
+            },
+            verdict: judged.map(|j| match j.verdict {
                 Verdict::Resolved => "resolved",
                 _ => "unresolved",
             }),
-            p_value: still.map(|(.., j)| j.p_value),
-            power_ratio_interval: still.map(|(.., j)| [j.ratio.lower, j.ratio.upper]),
-            excess_rms_arcsec: still.map(|(.., j)| j.excess_rms_arcsec.value),
-            excess_rms_interval_arcsec: still
-                .map(|(.., j)| [j.excess_rms_arcsec.lower, j.excess_rms_arcsec.upper]),
-            decision_threshold_arcsec: still.map(|(.., j)| j.decision_threshold_arcsec),
-            detection_limit_arcsec: still.map(|(.., j)| j.detection_limit_arcsec),
+            p_value: judged.map(|j| j.p_value),
+            power_ratio_interval: judged.map(|j| [j.ratio.lower, j.ratio.upper]),
+            excess_rms_arcsec: judged.map(|j| j.excess_rms_arcsec.value),
+            excess_rms_interval_arcsec: judged
+                .map(|j| [j.excess_rms_arcsec.lower, j.excess_rms_arcsec.upper]),
+            decision_threshold_arcsec: judged.map(|j| j.decision_threshold_arcsec),
+            detection_limit_arcsec: judged.map(|j| j.detection_limit_arcsec),
             x: json::TremorAxis {
                 rms_arcmin: tremor.map(|t| t.x.rms_arcmin()),
                 still_rms_arcmin: still.map(|(s, ..)| s.x.rms_arcmin()),

@@ -104,6 +104,7 @@ pub struct Tremor {
     pub rms_arcmin: Option<f64>,
     pub still_rms_arcmin: Option<f64>,
     pub ratio: Option<f64>,
+    pub judged_against: Option<&'static str>,
     pub verdict: Option<&'static str>,
     pub p_value: Option<f64>,
     pub power_ratio_interval: Option<[f64; 2]>,

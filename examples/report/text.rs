@@ -1,6 +1,6 @@
 //! The report on the terminal.
 
-use crate::analysis::{Analysis, BCEA_PROBABILITY, LEVEL, both};
+use crate::analysis::{Analysis, BCEA_PROBABILITY, LEVEL, SIDES, both};
 use fixational::Trace;
 use fixational::events::{BinocularAgreement, Detections, Event};
 use fixational::instrument::FalseAlarms;
@@ -172,6 +172,11 @@ fn tremor(page: &mut Page, a: &Analysis) {
     match &a.still_tremor {
         None => {
             page.row("", "no still eye to compare with: this may all be the instrument's noise");
+            if let Some(judged) = &a.by_sides {
+                let [[a, b], [c, d]] = SIDES;
+                let floor = format!("a floor drawn between {a}–{b} and {c}–{d} Hz");
+                page.row("", &verdict(judged, &floor));
+            }
         }
         Some(Err(error)) => page.row("", &format!("still eye: {error}")),
         Some(Ok((still, ratio, judged))) => {
@@ -185,12 +190,12 @@ fn tremor(page: &mut Page, a: &Analysis) {
                     ratio.y.rms,
                 ),
             );
-            page.row("", &verdict(judged));
+            page.row("", &verdict(judged, "the still eye's power"));
         }
     }
 }
 
-fn verdict(judged: &Judgement) -> String {
+fn verdict(judged: &Judgement, floor: &str) -> String {
     let p = judged.p_value;
     let p = if p < 1e-4 { "p < 0.0001".into() } else { format!("p = {p:.4}") };
     let power = judged.ratio;
@@ -203,7 +208,7 @@ fn verdict(judged: &Judgement) -> String {
         Verdict::Resolved => {
             let excess = judged.excess_rms_arcsec;
             format!(
-                "resolved: {:.2} × the still eye's power (F test {p}); {}″ [{}, {}] RMS beyond it, of \
+                "resolved: {:.2} × {floor} (F test {p}); {}″ [{}, {}] RMS beyond it, of \
                  which drift may have a share; {limit}",
                 power.value,
                 digits(excess.value, 2),

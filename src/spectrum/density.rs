@@ -122,7 +122,7 @@ impl Spectrum {
     }
 
     /// How much of bin `k` counts as inside the band, from 0 to 1.
-    pub(super) fn share(&self, k: usize, band: Band, edges: BandEdges) -> f64 {
+    pub(crate) fn share(&self, k: usize, band: Band, edges: BandEdges) -> f64 {
         match edges {
             BandEdges::Centres => f64::from(u8::from(band.contains(self.frequency(k)))),
             BandEdges::Proportional => {

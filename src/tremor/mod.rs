@@ -5,11 +5,15 @@
 //! ([`Tremor::relative_to`]). Drift has power in the band too, and a saccade far more: events are taken
 //! out, with a margin, and each segment's trend before its spectrum.
 
+mod comparison;
 mod verdict;
 
+pub use comparison::BinRatio;
 pub use verdict::{Judgement, Verdict, VerdictOptions};
 
-use crate::spectrum::{Band, BandEdges, Detrend, Overlap, Spectrum, Welch, WelchOptions, Window};
+use crate::spectrum::{
+    Band, BandEdges, Detrend, Freedom, Overlap, Spectrum, Welch, WelchOptions, Window,
+};
 use crate::{Error, NotObservable, Result, SamplingRate, Spans, Trace};
 
 /// How band power is measured between events.
@@ -137,6 +141,7 @@ impl TremorCriteria {
             y: BandMotion { power: y },
             both: BandMotion { power: x + y },
             degrees_of_freedom: summed_freedom([(x, dof_x), (y, dof_y)]),
+            freedom,
             segments: spectrum_x.segments,
             clean_seconds: rate.seconds(clean.samples()),
             used_seconds: rate.seconds(spectrum_x.samples_used),
@@ -234,6 +239,8 @@ pub struct Tremor {
     pub spectrum_y: Spectrum,
     /// Equivalent degrees of freedom of the power of both axes together, which are taken as independent.
     pub degrees_of_freedom: f64,
+    /// Degrees of freedom of the spectra's bins and bands.
+    pub freedom: Freedom,
     /// Spectral segments averaged.
     pub segments: usize,
     /// The clean samples.

@@ -1,5 +1,6 @@
 use super::Tremor;
 use crate::estimate::f_distribution as f;
+use crate::spectrum::{Band, Spectrum};
 use crate::{Error, Estimate, Result};
 
 /// How a band is judged against a still eye.
@@ -140,41 +141,124 @@ impl Tremor {
     /// ```
     pub fn judge(&self, still: &Self, options: VerdictOptions) -> Result<Judgement> {
         options.check()?;
-        let ratio = self.relative_to(still)?.both.power;
-        let [nu_1, nu_0] = [self.degrees_of_freedom, still.degrees_of_freedom];
-        let (p1, p0) = (self.both.power, still.both.power);
-        let tail = (1.0 - options.level) / 2.0;
+        self.relative_to(still)?;
+        let [eye, floor] = [self, still].map(|t| (t.both.power, t.degrees_of_freedom));
+        Ok(judge(eye, floor, options))
+    }
 
-        let critical = f::quantile(nu_1, nu_0, 1.0 - options.false_alarm);
-        let detectable = critical * f::quantile(nu_0, nu_1, 1.0 - options.miss);
-        let estimate = |value: f64, lower: f64, upper: f64| Estimate {
-            value,
-            lower,
-            upper,
-            level: options.level,
+    /// Judges the band against a floor drawn from the bands on both sides of it, for recordings without
+    /// a still eye.
+    ///
+    /// Assumes that without tremor the density would follow one power law from the middle of `below` to
+    /// the middle of `above` (on log axes, a straight line). Where drift falls steeply into flat noise the
+    /// line lies too high, and a small tremor stays unresolved; where the instrument's own noise bulges
+    /// between the sides, the bulge is called a movement.
+    ///
+    /// # Errors
+    /// As [`Spectrum::band_power`](crate::spectrum::Spectrum::band_power) for the sides;
+    /// [`Error::SettingMismatch`] if they do not lie on both sides of the band; [`Error::NoSpread`] if one
+    /// has no power; [`Error::Parameter`] for a probability out of its domain.
+    ///
+    /// # Example
+    /// ```
+    /// use fixational::spectrum::Band;
+    /// use fixational::tremor::{TremorCriteria, Verdict, VerdictOptions};
+    /// let still = fixational::simulation::Session::default().simulate()?.still_eye;
+    /// let measured = TremorCriteria::default().measure(&still, &fixational::Spans::none())?;
+    /// let (below, above) = (Band::new(20.0, 36.0)?, Band::new(104.0, 160.0)?);
+    /// let judged = measured.judge_by_sides(below, above, VerdictOptions::default())?;
+    /// assert_eq!(judged.verdict, Verdict::Unresolved);
+    /// # Ok::<(), fixational::Error>(())
+    /// ```
+    pub fn judge_by_sides(
+        &self,
+        below: Band,
+        above: Band,
+        options: VerdictOptions,
+    ) -> Result<Judgement> {
+        options.check()?;
+        let (band, edges) = (self.criteria.band, self.criteria.edges);
+        if below.high() > band.low() || above.low() < band.high() {
+            return Err(Error::SettingMismatch {
+                what: "where the sides lie: one below, one above",
+            });
+        }
+        let low = self.side(below, "the side below the band")?;
+        let high = self.side(above, "the side above the band")?;
+        // ln S(f) = (1 − w) ln S_low + w ln S_high, w from 0 at the lower side to 1 at the upper.
+        let reach = (high.middle / low.middle).ln();
+        let spectrum = &self.spectrum_x;
+        let (mut floor, mut weight) = (0.0, 0.0);
+        for k in 0..spectrum.values.len() {
+            let share = spectrum.share(k, band, edges);
+            if share > 0.0 {
+                let w = (spectrum.frequency(k) / low.middle).ln() / reach;
+                let density = ((1.0 - w) * low.density.ln() + w * high.density.ln()).exp();
+                floor += share * density * spectrum.bin_width();
+                weight += w * share * density * spectrum.bin_width();
+            }
+        }
+        // A density with ν degrees of freedom has a logarithm with variance 2/ν (delta method).
+        let w = weight / floor;
+        let variance = (1.0 - w).powi(2) * 2.0 / low.freedom + w * w * 2.0 / high.freedom;
+        Ok(judge((self.both.power, self.degrees_of_freedom), (floor, 2.0 / variance), options))
+    }
+
+    /// Mean density of both axes in a side band.
+    fn side(&self, band: Band, what: &'static str) -> Result<Side> {
+        let edges = self.criteria.edges;
+        let part = |spectrum: &Spectrum| -> Result<(f64, f64)> {
+            Ok((spectrum.band_power(band, edges)?, self.freedom.band(spectrum, band, edges)?))
         };
-        let (lower, upper) = difference(p1, nu_1, p0, nu_0, tail);
-        let excess = estimate((p1 - p0).max(0.0), lower.max(0.0), upper.max(0.0));
-        let arcsec = |power: f64| 3600.0 * power.max(0.0).sqrt();
-        Ok(Judgement {
-            verdict: if ratio > critical { Verdict::Resolved } else { Verdict::Unresolved },
-            p_value: f::upper_tail(nu_1, nu_0, ratio),
-            ratio: estimate(
-                ratio,
-                ratio / f::quantile(nu_1, nu_0, 1.0 - tail),
-                ratio / f::quantile(nu_1, nu_0, tail),
-            ),
-            excess_power: excess,
-            excess_rms_arcsec: estimate(
-                arcsec(excess.value),
-                arcsec(excess.lower),
-                arcsec(excess.upper),
-            ),
-            decision_threshold_arcsec: arcsec((critical - 1.0) * p0),
-            detection_limit_arcsec: arcsec((detectable - 1.0) * p0),
-            degrees_of_freedom: [nu_1, nu_0],
-            options,
-        })
+        let parts = [part(&self.spectrum_x)?, part(&self.spectrum_y)?];
+        let width: f64 = (0..self.spectrum_x.values.len())
+            .map(|k| self.spectrum_x.share(k, band, edges) * self.spectrum_x.bin_width())
+            .sum();
+        let density = (parts[0].0 + parts[1].0) / width;
+        if !(density.is_finite() && density > 0.0) {
+            return Err(Error::NoSpread { what });
+        }
+        let middle = (band.low().max(self.spectrum_x.bin_width()) * band.high()).sqrt();
+        Ok(Side { middle, density, freedom: super::summed_freedom(parts) })
+    }
+}
+
+struct Side {
+    /// Geometric middle, Hz.
+    middle: f64,
+    density: f64,
+    freedom: f64,
+}
+
+/// Power and degrees of freedom of the eye against those of the floor.
+fn judge((p1, nu_1): (f64, f64), (p0, nu_0): (f64, f64), options: VerdictOptions) -> Judgement {
+    let tail = (1.0 - options.level) / 2.0;
+    let ratio = p1 / p0;
+    let critical = f::quantile(nu_1, nu_0, 1.0 - options.false_alarm);
+    let detectable = critical * f::quantile(nu_0, nu_1, 1.0 - options.miss);
+    let estimate =
+        |value: f64, lower: f64, upper: f64| Estimate { value, lower, upper, level: options.level };
+    let (lower, upper) = difference(p1, nu_1, p0, nu_0, tail);
+    let excess = estimate((p1 - p0).max(0.0), lower.max(0.0), upper.max(0.0));
+    let arcsec = |power: f64| 3600.0 * power.max(0.0).sqrt();
+    Judgement {
+        verdict: if ratio > critical { Verdict::Resolved } else { Verdict::Unresolved },
+        p_value: f::upper_tail(nu_1, nu_0, ratio),
+        ratio: estimate(
+            ratio,
+            ratio / f::quantile(nu_1, nu_0, 1.0 - tail),
+            ratio / f::quantile(nu_1, nu_0, tail),
+        ),
+        excess_power: excess,
+        excess_rms_arcsec: estimate(
+            arcsec(excess.value),
+            arcsec(excess.lower),
+            arcsec(excess.upper),
+        ),
+        decision_threshold_arcsec: arcsec((critical - 1.0) * p0),
+        detection_limit_arcsec: arcsec((detectable - 1.0) * p0),
+        degrees_of_freedom: [nu_1, nu_0],
+        options,
     }
 }
 
