@@ -216,10 +216,7 @@ fn verdict(judged: &Judgement, floor: &str) -> String {
                 digits(excess.upper, 2),
             )
         }
-        _ => format!(
-            "not resolved: {:.2} × the still eye's power (F test {p}); {limit}",
-            power.value
-        ),
+        _ => format!("not resolved: {:.2} × {floor} (F test {p}); {limit}", power.value),
     }
 }
 
