@@ -63,6 +63,12 @@ pub enum NotObservable {
     TooLittleSignal { segment: usize, longest: usize },
     /// Between `low` and `high` (Hz) there is no spectral bin: bins are `bin_width` Hz apart.
     NoBinInBand { low: f64, high: f64, bin_width: f64 },
+    /// The band's upper edge `high` lies above the cut-off of the instrument's own low-pass filter
+    /// (both Hz).
+    BehindLowPass { high: f64, cut_off: f64 },
+    /// The positions come in steps of `step` degrees, whose rounding alone makes a share `share` of the
+    /// band's power.
+    Quantised { step: f64, share: f64 },
 }
 
 impl fmt::Display for Error {
@@ -130,6 +136,17 @@ impl fmt::Display for NotObservable {
             Self::NoBinInBand { low, high, bin_width } => write!(
                 f,
                 "no spectral bin lies between {low} Hz and {high} Hz: bins are {bin_width} Hz apart"
+            ),
+            Self::BehindLowPass { high, cut_off } => write!(
+                f,
+                "the band reaches {high} Hz, but the instrument lets through only what lies below \
+                 {cut_off} Hz"
+            ),
+            Self::Quantised { step, share } => write!(
+                f,
+                "positions come in steps of {step}°, whose rounding alone makes {:.0} % of the band's \
+                 power",
+                100.0 * share
             ),
         }
     }

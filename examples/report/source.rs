@@ -6,6 +6,7 @@ use fixational::interchange::{
     BidsOptions, DelimitedFormat, GazeTable, TimeUnit, read_bids_with, read_delimited,
 };
 use fixational::simulation::Session;
+use fixational::statistics::quantisation_step;
 use fixational::{Error, Result, SamplingRate, ScreenGeometry, Trace};
 use std::path::Path;
 
@@ -65,7 +66,9 @@ fn read(path: &Path, options: &Options, notes: &mut Vec<String>) -> Result<Sourc
              --missing {marker}"
         ));
     }
-    if let Some(step) = quantum(&table.x).or_else(|| quantum(&table.y)) {
+    if let Some(step) = quantisation_step(&table.x).or_else(|| quantisation_step(&table.y)) {
+        // Nine digits are what a decimal recorder can mean.
+        let step = (step * 1e9).round() / 1e9;
         note(format!("positions come in steps of {step} {}", table.unit));
     }
 
@@ -193,18 +196,4 @@ fn likely_marker(table: &GazeTable, options: &Options) -> Option<(f64, usize)> {
         .filter(|marker| !options.missing.contains(marker))
         .map(|marker| (marker, count(marker)))
         .find(|(_, count)| *count > 1)
-}
-
-/// The step of a quantised axis: the least difference between neighbouring values, if values repeat
-/// so often that there must be one.
-fn quantum(axis: &[f64]) -> Option<f64> {
-    let mut values: Vec<f64> = axis.iter().copied().filter(|v| v.is_finite()).collect();
-    let all = values.len();
-    values.sort_unstable_by(f64::total_cmp);
-    values.dedup();
-    let steps = values.iter().skip(1).zip(&values).map(|(next, value)| next - value);
-    let least = steps.fold(f64::INFINITY, f64::min);
-    // Nine digits: steps of a decimal recorder differ in their last bits.
-    let rounded = (least * 1e9).round() / 1e9;
-    (all > 100 && values.len() * 4 < all && rounded > 0.0 && rounded.is_finite()).then_some(rounded)
 }

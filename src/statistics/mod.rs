@@ -7,6 +7,6 @@ mod moments;
 mod order;
 
 pub use moments::{mean, standard_deviation, variance};
-pub use order::{median, median_spread, quantile};
+pub use order::{median, median_spread, quantile, quantisation_step};
 
 pub(crate) use order::median_over;

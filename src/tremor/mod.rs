@@ -14,6 +14,7 @@ pub use verdict::{Judgement, Verdict, VerdictOptions};
 use crate::spectrum::{
     Band, BandEdges, Detrend, Freedom, Overlap, Spectrum, Welch, WelchOptions, Window,
 };
+use crate::statistics::quantisation_step;
 use crate::{Error, NotObservable, Result, SamplingRate, Spans, Trace};
 
 /// How band power is measured between events.
@@ -56,6 +57,9 @@ pub struct TremorCriteria {
     pub padding: f64,
     /// What counts as inside the band. Default: bins by their centre.
     pub edges: BandEdges,
+    /// Cut-off of a low-pass filter in the instrument, Hz, where it is known; finite, > 0. A band that
+    /// reaches above it cannot be observed. Default: none stated.
+    pub low_pass: Option<f64>,
 }
 
 impl TremorCriteria {
@@ -108,11 +112,19 @@ impl TremorCriteria {
         self
     }
 
+    /// States the cut-off of a low-pass filter in the instrument, Hz.
+    #[must_use]
+    pub fn low_pass(mut self, cut_off: f64) -> Self {
+        self.low_pass = Some(cut_off);
+        self
+    }
+
     /// Band power of a trace outside the `excluded` samples (events; [`Spans::none`] for a still eye).
     ///
     /// # Errors
-    /// [`Error::NotObservable`] for a band above half the sampling rate, a band without a bin, or a
-    /// trace without one clean segment; [`Error::Parameter`] for a setting out of its domain;
+    /// [`Error::NotObservable`] for a band above half the sampling rate or above a stated low-pass, a band
+    /// without a bin, a trace without one clean segment, or positions whose steps make half the band's
+    /// power or more by their rounding (`step²/12` spread evenly up to half the rate); [`Error::Parameter`] for a setting out of its domain;
     /// [`Error::Span`] for an excluded span outside the trace.
     pub fn measure(&self, trace: &Trace, excluded: &Spans) -> Result<Tremor> {
         let rate = trace.rate();
@@ -132,6 +144,8 @@ impl TremorCriteria {
         let spectrum_y = plan.estimate_spans_with(trace.y(), &clean, &mut scratch)?;
         let x = spectrum_x.band_power(self.band, self.edges)?;
         let y = spectrum_y.band_power(self.band, self.edges)?;
+        self.finer_than_its_steps(trace.x(), rate, x)?;
+        self.finer_than_its_steps(trace.y(), rate, y)?;
         let freedom = plan.freedom(&clean)?;
         let dof_x = freedom.band(&spectrum_x, self.band, self.edges)?;
         let dof_y = freedom.band(&spectrum_y, self.band, self.edges)?;
@@ -159,10 +173,25 @@ impl TremorCriteria {
 
     fn observable(&self, rate: SamplingRate) -> Result<()> {
         let (high, nyquist) = (self.band.high(), rate.nyquist());
+        let refuse = |why| Err(Error::NotObservable { why });
         if high > nyquist {
-            return Err(Error::NotObservable {
-                why: NotObservable::AboveNyquist { high, nyquist },
-            });
+            return refuse(NotObservable::AboveNyquist { high, nyquist });
+        }
+        match self.low_pass {
+            Some(cut_off) if high > crate::input::positive("low_pass", cut_off)? => {
+                refuse(NotObservable::BehindLowPass { high, cut_off })
+            }
+            _ => Ok(()),
+        }
+    }
+
+    /// Refuses an axis whose band power is half or more the rounding of its steps: white noise of
+    /// variance step²/12, so step²/(6 · rate) of density.
+    fn finer_than_its_steps(&self, axis: &[f64], rate: SamplingRate, power: f64) -> Result<()> {
+        let Some(step) = quantisation_step(axis) else { return Ok(()) };
+        let share = step * step / (6.0 * rate.hertz()) * self.band.width() / power;
+        if share >= 0.5 {
+            return Err(Error::NotObservable { why: NotObservable::Quantised { step, share } });
         }
         Ok(())
     }
@@ -187,6 +216,7 @@ impl Default for TremorCriteria {
             detrend: Detrend::Linear,
             padding: 0.02,
             edges: BandEdges::Centres,
+            low_pass: None,
         }
     }
 }
@@ -435,6 +465,30 @@ mod tests {
             why(narrow.measure(&trace, &Spans::none())),
             NotObservable::NoBinInBand { .. }
         ));
+    }
+
+    #[test]
+    fn filters_and_steps_of_the_instrument_hide_the_band() {
+        let still = |quantum: f64| {
+            let instrument = Instrument::default().noise(0.005).quantum(quantum);
+            Session::default().duration(20.0).instrument(instrument).simulate().unwrap().still_eye
+        };
+        let (criteria, none) = (TremorCriteria::default(), Spans::none());
+        let fine = criteria.measure(&still(0.0), &none).unwrap();
+        // Steps of the noise's own size add a twelfth to its variance.
+        let stepped = criteria.measure(&still(0.005), &none).unwrap();
+        assert!((stepped.both.power / fine.both.power / (13.0 / 12.0) - 1.0).abs() < 0.02);
+        let error = criteria.measure(&still(0.02), &none).unwrap_err();
+        let Error::NotObservable { why: NotObservable::Quantised { step, share } } = error else {
+            panic!("{error}")
+        };
+        assert!((step - 0.02).abs() < 1e-9 && share >= 0.5, "{step} {share}");
+
+        let error = criteria.low_pass(60.0).measure(&still(0.0), &none).unwrap_err();
+        let why = NotObservable::BehindLowPass { high: 100.0, cut_off: 60.0 };
+        assert_eq!(error, Error::NotObservable { why });
+        assert!(criteria.low_pass(100.0).measure(&still(0.0), &none).is_ok());
+        assert!(criteria.low_pass(f64::NAN).measure(&still(0.0), &none).is_err());
     }
 
     #[test]
