@@ -30,7 +30,7 @@ use fixational::events::binocular_events;
 use fixational::interchange::FileProblem;
 use indicatif::{ProgressBar, ProgressStyle};
 use options::Options;
-use source::Source;
+use source::{Source, Unread};
 use std::error::Error;
 use std::path::Path;
 use std::process::ExitCode;
@@ -41,24 +41,29 @@ fn main() -> ExitCode {
         Ok(()) => ExitCode::SUCCESS,
         Err(error) => {
             eprintln!("error: {error}");
-            if needs_scale(error.as_ref()) {
-                eprintln!(
-                    "here: --pixels-per-degree N, or --screen-width, --screen-height, \
-                     --screen-resolution and --screen-distance"
-                );
+            if let Some(hint) = error.downcast_ref().and_then(hint) {
+                eprintln!("here: {hint}");
             }
             ExitCode::FAILURE
         }
     }
 }
 
-/// Whether the library asks for a scale, which options here can give.
-fn needs_scale(error: &(dyn Error + 'static)) -> bool {
-    match error.downcast_ref() {
-        Some(fixational::Error::File(file)) => {
-            matches!(file.problem, FileProblem::NeedsScale { .. })
-        }
-        _ => false,
+/// The option that gives what the library asks for.
+fn hint(unread: &Unread) -> Option<&'static str> {
+    match &unread.error {
+        fixational::Error::File(file) => match file.problem {
+            FileProblem::NeedsScale { .. } => Some(
+                "--pixels-per-degree N, or --screen-width, --screen-height, --screen-resolution \
+                 and --screen-distance",
+            ),
+            FileProblem::MissingColumn { .. } => {
+                Some("--time-column, --x-column and --y-column name the columns of delimited text")
+            }
+            _ => None,
+        },
+        fixational::Error::Clock { .. } => Some("--rate HZ --ignore-clock"),
+        _ => None,
     }
 }
 

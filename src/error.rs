@@ -105,9 +105,14 @@ impl fmt::Display for Error {
                 write!(f, "span {index} is {start}..{end}; {rule}")
             }
             Self::BackwardTime { row, previous, time } => {
-                write!(f, "time runs backward at row {row}: {time} s after {previous} s")
+                write!(
+                    f,
+                    "time runs backward at row {row} (the first is 0): {time} s after {previous} s"
+                )
             }
-            Self::Clock { why, row, time } => write!(f, "clock at row {row} ({time} s): {why}"),
+            Self::Clock { why, row, time } => {
+                write!(f, "clock at row {row} (the first is 0; {time} s): {why}")
+            }
             Self::NotObservable { why } => write!(f, "not observable: {why}"),
             #[cfg(feature = "interchange")]
             Self::File(error) => error.fmt(f),

@@ -64,6 +64,15 @@ pub struct Options {
     /// Take the rows as equally spaced, whatever their timestamps
     #[arg(long, requires = "rate", help_heading = "Reading")]
     pub ignore_clock: bool,
+    /// Column of timestamps in delimited text
+    #[arg(long, value_name = "NAME", help_heading = "Reading")]
+    pub time_column: Option<String>,
+    /// Column of horizontal positions in delimited text
+    #[arg(long, value_name = "NAME", help_heading = "Reading")]
+    pub x_column: Option<String>,
+    /// Column of vertical positions in delimited text
+    #[arg(long, value_name = "NAME", help_heading = "Reading")]
+    pub y_column: Option<String>,
     /// Unit of positions in delimited text
     #[arg(long, value_enum, default_value = "degree", help_heading = "Reading")]
     pub unit: Unit,

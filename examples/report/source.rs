@@ -22,14 +22,35 @@ pub struct Source {
     pub clock: Option<(f64, TimeUnit)>,
 }
 
+/// Why a file did not become a trace.
+#[derive(Debug)]
+pub struct Unread {
+    name: String,
+    pub error: Error,
+}
+
+impl std::fmt::Display for Unread {
+    fn fmt(&self, f: &mut std::fmt::Formatter<'_>) -> std::fmt::Result {
+        match &self.error {
+            // It names the file itself.
+            Error::File(file) => write!(f, "{file}"),
+            error => write!(f, "{}: {error}", self.name),
+        }
+    }
+}
+
+impl std::error::Error for Unread {}
+
 /// All eyes, and the sentences.
-pub fn load(options: &Options) -> Result<(Vec<Source>, Vec<String>)> {
+pub fn load(options: &Options) -> std::result::Result<(Vec<Source>, Vec<String>), Unread> {
     let mut notes = Vec::new();
     let Some(first) = &options.recording else {
-        let session = Session::default().seed(options.seed).simulate()?;
+        let name = format!("built-in session, seed {}", options.seed);
+        let session = Session::default().seed(options.seed).simulate();
+        let session = session.map_err(|error| Unread { name: name.clone(), error })?;
         let source = Source {
             eye: "simulated".into(),
-            name: format!("built-in session, seed {}", options.seed),
+            name,
             trace: session.recording,
             still: Some(session.still_eye),
             clock: None,
@@ -38,10 +59,14 @@ pub fn load(options: &Options) -> Result<(Vec<Source>, Vec<String>)> {
     };
     let mut sources = Vec::new();
     for (k, path) in std::iter::once(first).chain(&options.second_eye).enumerate() {
-        let mut source = read(path, options, &mut notes)?;
+        let mut read = |path: &Path| {
+            let name = path.display().to_string();
+            read(path, options, &mut notes).map_err(|error| Unread { name, error })
+        };
+        let mut source = read(path)?;
         // One still recording serves both eyes; two serve one each.
         if let Some(still) = options.still.get(k).or(options.still.first()) {
-            source.still = Some(read(still, options, &mut notes)?.trace);
+            source.still = Some(read(still)?.trace);
         }
         sources.push(source);
     }
@@ -97,6 +122,15 @@ fn read_table(path: &Path, name: &str, options: &Options) -> Result<GazeTable> {
     };
     let unit = options.unit.into();
     let mut format = DelimitedFormat::default().time_unit(time_unit).position_unit(unit);
+    if let Some(name) = &options.time_column {
+        format = format.time_column(name);
+    }
+    if let Some(name) = &options.x_column {
+        format = format.x_column(name);
+    }
+    if let Some(name) = &options.y_column {
+        format = format.y_column(name);
+    }
     for &marker in &options.missing {
         format = format.missing_value(marker);
     }

@@ -39,7 +39,8 @@ const REPEATED: &str = "more than one row in twenty repeats the time before it, 
 /// as of the other). A row farther off may take the place of its neighbour, which is then left out, and
 /// listed.
 ///
-/// **The rate** is 1/median interval if the grid of that period, laid from the first row, stays within
+/// **The rate** is 1/median interval (as a whole number of hertz where the rounding of the times lets it
+/// not be told from one) if the grid of that period, laid from the first row, stays within
 /// half a sample of every row; otherwise that of the least-squares line of time on grid index.
 /// [`ClockReport::basis`] says which. With a [`stated_rate`](Self::stated_rate) rows are placed by the
 /// stated period, gaps too, and that rate is the trace's.
@@ -218,7 +219,7 @@ impl UniformClock {
         let (rate, basis) = match self.stated_rate {
             Some(rate) => (rate, RateBasis::Stated),
             None if placed.off_median <= median / 2.0 => {
-                (SamplingRate::new(1.0 / median)?, RateBasis::Median)
+                (whole_hertz(1.0 / median, &times)?, RateBasis::Median)
             }
             None => (fitted_rate, RateBasis::Fitted),
         };
@@ -238,6 +239,16 @@ impl UniformClock {
         };
         Ok((Trace::from_checked(rate, placed.x, placed.y), report))
     }
+}
+
+/// The rate of one interval, or the whole number of hertz that it cannot be told from: an interval is as
+/// uncertain as the rounding of the two times that it lies between.
+fn whole_hertz(hertz: f64, times: &[f64]) -> Result<SamplingRate> {
+    let latest = times.first().zip(times.last()).map_or(0.0, |(a, b)| a.abs().max(b.abs()));
+    let uncertain = 2.0 * f64::EPSILON * (latest * hertz + 1.0);
+    let whole = hertz.round();
+    let told_apart = (hertz - whole).abs() > uncertain * hertz;
+    SamplingRate::new(if told_apart || whole < 1.0 { hertz } else { whole })
 }
 
 fn elapsed(times: &[f64]) -> f64 {
