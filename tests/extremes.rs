@@ -8,10 +8,12 @@ use fixational::stability::{AveragingTimes, Series, Statistic, deviation};
 use fixational::tremor::TremorCriteria;
 use fixational::{Error, SamplingRate, Spans, Trace};
 
+#[expect(clippy::unwrap_used, reason = "a rate that exists")]
 fn rate() -> SamplingRate {
     SamplingRate::new(1000.0).unwrap()
 }
 
+#[expect(clippy::unwrap_used, reason = "a trace that exists")]
 fn trace(scale: f64) -> Trace {
     let axis = |k: usize| (0..600).map(|i| scale * ((i * k % 17) as f64 / 16.0 - 0.5)).collect();
     let (x, y): (Vec<f64>, Vec<f64>) = (axis(5), axis(7));

@@ -9,7 +9,8 @@ use fixational::{Spans, simulation::Session};
 use serde_json::{Value, to_value};
 
 fn assert_keys(value: &Value, expected: &[&str]) {
-    let mut found: Vec<&str> = value.as_object().unwrap().keys().map(String::as_str).collect();
+    let mut found: Vec<&str> =
+        value.as_object().into_iter().flat_map(|o| o.keys()).map(String::as_str).collect();
     let mut expected = expected.to_vec();
     found.sort_unstable();
     expected.sort_unstable();
