@@ -44,7 +44,7 @@ fn precision_of_a_square_wave() {
 #[test]
 fn tremor_states_the_time_it_used() {
     let rate = SamplingRate::new(1000.0).unwrap();
-    let x: Vec<f64> = (0..4000).map(|i| (i * i % 31) as f64).collect();
+    let x: Vec<f64> = (0..4000).map(|i| f64::from(i * i % 31)).collect();
     let trace = Trace::new(rate, x.clone(), x).unwrap();
     let event = Spans::one(2000..2020);
     let found = TremorCriteria::default().measure(&trace, &event).unwrap();
