@@ -35,12 +35,16 @@ pub struct SavitzkyGolay {
     half: Vec<f64>,
 }
 
+/// More than half a minute at 2 kHz. A window without a bound could ask for more memory than there is.
+const LONGEST_WINDOW: usize = 65_535;
+
 impl SavitzkyGolay {
     /// A filter over `window` samples with a polynomial of `order`, for the stated `derivative`
     /// (0 smooths).
     ///
     /// # Errors
-    /// [`Error::Parameter`] unless `window` is odd, `order < window` and `derivative ≤ order`.
+    /// [`Error::Parameter`] unless `window` is odd and at most 65 535, `order < window` and
+    /// `derivative ≤ order`, or if the weights of so high an order are no numbers.
     pub fn new(window: usize, order: usize, derivative: usize) -> Result<Self> {
         let refuse = |name, value: usize, allowed| {
             Err(Error::Parameter { name, value: value as f64, allowed })
@@ -48,13 +52,20 @@ impl SavitzkyGolay {
         if window.is_multiple_of(2) {
             return refuse("window", window, "an odd number of samples");
         }
+        if window > LONGEST_WINDOW {
+            return refuse("window", window, "at most 65535 samples");
+        }
         if order >= window {
             return refuse("order", order, "less than the window");
         }
         if derivative > order {
             return refuse("derivative", derivative, "at most the order");
         }
-        Ok(Self { derivative, half: half_weights(window / 2, order, derivative) })
+        let half = half_weights(window / 2, order, derivative);
+        if half.iter().any(|w| !w.is_finite()) {
+            return refuse("order", order, "so low that the weights are numbers (below about 500)");
+        }
+        Ok(Self { derivative, half })
     }
 
     /// The window, in samples.
@@ -147,6 +158,10 @@ fn half_weights(m: usize, order: usize, derivative: usize) -> Vec<f64> {
         // ‖p_k‖² over all points: the centre once, the others twice.
         let norm = current.iter().skip(1).map(|p| 2.0 * p * p).sum::<f64>()
             + current.first().map_or(0.0, |p| p * p);
+        // Norms shrink about fourfold an order and lose their digits in the end: no weight is right then.
+        if norm < f64::MIN_POSITIVE {
+            return vec![f64::NAN; m + 1];
+        }
         let wanted = current_at_zero.last().copied().unwrap_or(0.0) / norm;
         for (w, p) in weights.iter_mut().zip(&current) {
             *w += wanted * p;

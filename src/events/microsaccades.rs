@@ -153,7 +153,8 @@ impl MicrosaccadeCriteria {
     ///
     /// # Errors
     /// [`Error::Parameter`] for λ out of its domain, [`Error::Span`] for a span outside the trace,
-    /// [`Error::AllMissing`] if no velocity is defined, [`Error::NoSpread`] if an axis has none.
+    /// [`Error::AllMissing`] if no velocity is defined, [`Error::NoSpread`] if an axis has none,
+    /// [`Error::Overflow`] for velocities whose squares are too large for a number.
     pub fn threshold(&self, trace: &Trace, spans: &Spans) -> Result<EllipticThreshold> {
         positive("lambda", self.lambda)?;
         spans.within(trace.len())?;
@@ -161,6 +162,9 @@ impl MicrosaccadeCriteria {
         let half_axis = |what, axis: &[f64]| {
             let spread =
                 velocity_spread(axis, spans, &stencil).ok_or(Error::AllMissing { what })?;
+            if !spread.is_finite() {
+                return Err(Error::Overflow { what });
+            }
             let eta = self.lambda * spread;
             if spread > 0.0 { positive("threshold", eta) } else { Err(Error::NoSpread { what }) }
         };
@@ -241,7 +245,7 @@ impl MicrosaccadeCriteria {
 fn velocity_spread(axis: &[f64], spans: &Spans, stencil: &impl Stencil) -> Option<f64> {
     let middle = median_over(spans, |i| stencil.at(axis, i))?;
     let square = median_over(spans, |i| stencil.at(axis, i).powi(2))?;
-    Some((square - middle * middle).max(0.0).sqrt())
+    Some((square - middle * middle).clamp(0.0, f64::INFINITY).sqrt())
 }
 
 impl Microsaccades {

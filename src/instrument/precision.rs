@@ -122,7 +122,8 @@ impl Precision {
 /// Precision of a whole trace.
 ///
 /// # Errors
-/// [`Error::TooShort`] if no two neighbouring samples are present.
+/// [`Error::TooShort`] if no two neighbouring samples are present; [`Error::Overflow`] for positions whose
+/// squares are too large for a number.
 ///
 /// # Example
 /// ```
@@ -142,7 +143,7 @@ pub fn precision(trace: &Trace) -> Result<Precision> {
 ///
 /// # Errors
 /// [`Error::Span`] for a span outside the trace; [`Error::TooShort`] if no two neighbouring samples of a
-/// span are present.
+/// span are present; [`Error::Overflow`] for positions whose squares are too large for a number.
 ///
 /// # Example
 /// ```
@@ -165,8 +166,11 @@ pub fn precision_over(trace: &Trace, spans: &Spans) -> Result<Precision> {
         let longest = trace.present().intersection(spans).longest();
         return Err(Error::TooShort { what, needed: 2, found: longest });
     }
+    if !(sums.dx + sums.dy + sums.xx + sums.yy).is_finite() {
+        return Err(Error::Overflow { what: "precision" });
+    }
     let (n, pairs) = (sums.samples as f64, sums.pairs as f64);
-    let scale = (sums.xx * sums.yy).sqrt();
+    let scale = sums.xx.sqrt() * sums.yy.sqrt();
     Ok(Precision {
         samples: sums.samples,
         data_loss: 1.0 - n / spans.samples() as f64,
@@ -218,9 +222,10 @@ impl Sums {
             self.yy += y * y;
             self.xy += x * y;
         }
-        // What rounding left in the means (Chan, Golub & LeVeque 1983).
-        self.xx = (self.xx - rx * rx / n as f64).max(0.0);
-        self.yy = (self.yy - ry * ry / n as f64).max(0.0);
+        // What rounding left in the means (Chan, Golub & LeVeque 1983). `clamp` keeps the NaN of an
+        // overflow, which `max` would turn into zero.
+        self.xx = (self.xx - rx * rx / n as f64).clamp(0.0, f64::INFINITY);
+        self.yy = (self.yy - ry * ry / n as f64).clamp(0.0, f64::INFINITY);
         self.xy -= rx * ry / n as f64;
         for ((xa, ya), (xb, yb)) in all().zip(all().skip(1)) {
             let (dx, dy) = (xb - xa, yb - ya);

@@ -53,7 +53,8 @@ impl Deviations {
 ///
 /// # Errors
 /// [`Error::MissingSample`] or [`Error::Infinite`], with the index; [`Error::TooShort`] if there is no
-/// difference at m = 1; [`Error::Parameter`] for a given factor that is zero or too long.
+/// difference at m = 1; [`Error::Parameter`] for a given factor that is zero or too long; [`Error::Overflow`] for samples
+/// whose squared differences are too large for a number.
 ///
 /// # Source
 /// Riley 2008, NIST SP 1065.
@@ -148,6 +149,10 @@ pub fn deviation_over_spans<'a>(
                 *terms += count;
             }
         }
+    }
+
+    if sums.iter().any(|(sum, _)| !sum.is_finite()) {
+        return Err(Error::Overflow { what: "deviation" });
     }
 
     // Level data are accumulated in samples, not seconds: there τ₀ cancels from x/τ.
