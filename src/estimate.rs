@@ -47,6 +47,10 @@ impl Estimate {
     pub fn poisson_rate(count: usize, seconds: f64, level: f64) -> Result<Self> {
         crate::input::positive("seconds", seconds)?;
         check_level(level)?;
+        if !(count as f64 / seconds).is_finite() {
+            let allowed = "so long that the rate is a number";
+            return Err(Error::Parameter { name: "seconds", value: seconds, allowed });
+        }
         let tail = (1.0 - level) / 2.0;
         let n = count as f64;
         let lower = if count == 0 { 0.0 } else { chi_squared_quantile(2.0 * n, tail) };
@@ -116,8 +120,9 @@ pub(crate) fn chi_squared_interval(value: f64, dof: f64, level: f64) -> Result<E
     })
 }
 
+/// A level whose tails a number can tell from nothing.
 fn check_level(level: f64) -> Result<()> {
-    if level > 0.0 && level < 1.0 {
+    if level > 0.0 && level < 1.0 && 1.0 - (1.0 - level) / 2.0 < 1.0 {
         Ok(())
     } else {
         Err(Error::Parameter { name: "level", value: level, allowed: "0 < level < 1" })
@@ -236,5 +241,13 @@ mod tests {
             assert!(Estimate::poisson_rate(1, seconds, level).is_err(), "{seconds} {level}");
         }
         assert!(Estimate::poisson_rate(1, 1.0, f64::NAN).is_err());
+        let nearly_one = 1.0 - f64::EPSILON / 2.0;
+        assert!(Estimate::poisson_rate(1, 1.0, nearly_one).is_err());
+        assert!(Estimate::poisson_rate(1, 1e-310, 0.95).is_err());
+        for (successes, trials, level) in
+            [(0, 0, 0.95), (2, 1, 0.95), (1, 2, 0.0), (1, 2, nearly_one)]
+        {
+            assert!(Estimate::proportion(successes, trials, level).is_err());
+        }
     }
 }

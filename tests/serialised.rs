@@ -47,9 +47,7 @@ fn microsaccades() {
 fn still_eye() {
     let still = Session::default().simulate().unwrap().still_eye;
     let json = to_value(precision(&still).unwrap()).unwrap();
-    for key in ["samples", "data_loss", "pairs", "rms_s2s", "sd", "correlation"] {
-        assert!(json.get(key).is_some(), "{key}");
-    }
+    assert_keys(&json, &["samples", "data_loss", "pairs", "rms_s2s", "sd", "correlation", "spans"]);
     assert_keys(&json["sd"], &["x", "y", "both"]);
 
     let times = AveragingTimes::Given(vec![2]);
@@ -72,6 +70,7 @@ fn still_eye() {
             "x",
             "y",
             "both",
+            "degrees_of_freedom",
             "spectrum_x",
             "spectrum_y",
             "segments",

@@ -122,8 +122,8 @@ pub fn spans_of(events: &[Event]) -> Spans {
     })
 }
 
-/// `√(vx² + vy²)`, deg/s. The plain root: no velocity is so large or small that its square would not
-/// do, and `hypot` costs ten times as much.
+/// `√(vx² + vy²)`, deg/s. The plain root, since `hypot` costs ten times as much; it is infinite above
+/// about 1e154 deg/s.
 #[inline(always)]
 pub(super) fn speed(vx: f64, vy: f64) -> f64 {
     (vx * vx + vy * vy).sqrt()

@@ -45,13 +45,13 @@ pub struct Precision {
     pub pairs: usize,
     /// Root mean square of the differences between neighbouring samples, degrees.
     pub rms_s2s: AxisPair,
-    /// Standard deviation, degrees, divided by n (by n less the spans' means for `ddof` 1; see
-    /// [`sd_sample`](Self::sd_sample)).
+    /// Standard deviation, degrees: of these samples, divided by n. See
+    /// [`sd_sample`](Self::sd_sample) for that of the population they come from.
     pub sd: AxisPair,
     /// Pearson's correlation of x and y, in [−1, 1]; zero if an axis is constant.
     pub correlation: f64,
-    /// Means that the squares were taken about: one a span.
-    means: usize,
+    /// Spans that held a sample, each with a mean of its own that its squares were taken about.
+    pub spans: usize,
 }
 
 impl Precision {
@@ -73,11 +73,11 @@ impl Precision {
     /// # Errors
     /// [`Error::TooShort`] if there are no more samples than spans.
     pub fn sd_sample(&self) -> Result<AxisPair> {
-        if self.samples <= self.means {
-            let (needed, found) = (self.means + 1, self.samples);
+        if self.samples <= self.spans {
+            let (needed, found) = (self.spans + 1, self.samples);
             return Err(Error::TooShort { what: "trace", needed, found });
         }
-        let scale = (self.samples as f64 / (self.samples - self.means) as f64).sqrt();
+        let scale = (self.samples as f64 / (self.samples - self.spans) as f64).sqrt();
         let AxisPair { x, y, both } = self.sd;
         Ok(AxisPair { x: scale * x, y: scale * y, both: scale * both })
     }
@@ -178,7 +178,7 @@ pub fn precision_over(trace: &Trace, spans: &Spans) -> Result<Precision> {
         rms_s2s: AxisPair::of_squares(sums.dx / pairs, sums.dy / pairs),
         sd: AxisPair::of_squares(sums.xx / n, sums.yy / n),
         correlation: if scale > 0.0 { (sums.xy / scale).clamp(-1.0, 1.0) } else { 0.0 },
-        means: sums.spans,
+        spans: sums.spans,
     })
 }
 

@@ -36,7 +36,6 @@ use realfft::RealFftPlanner;
 /// # Ok::<(), fixational::Error>(())
 /// ```
 #[derive(Debug, Clone, PartialEq)]
-#[cfg_attr(feature = "serde", derive(serde::Serialize))]
 pub struct Freedom {
     segments: usize,
     fft_length: usize,

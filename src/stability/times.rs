@@ -2,6 +2,7 @@ use crate::{Error, Result};
 
 /// At which averaging times a deviation is wanted, in samples: the averaging factors m of τ = m / rate.
 #[derive(Debug, Clone, PartialEq, Eq, Default)]
+#[cfg_attr(feature = "serde", derive(serde::Serialize))]
 #[non_exhaustive]
 pub enum AveragingTimes {
     /// 1, 2, 4, 8, … as long as there is a difference.

@@ -269,7 +269,8 @@ pub struct Tremor {
     pub spectrum_y: Spectrum,
     /// Equivalent degrees of freedom of the power of both axes together, which are taken as independent.
     pub degrees_of_freedom: f64,
-    /// Degrees of freedom of the spectra's bins and bands.
+    /// Degrees of freedom of the spectra's bins and bands. Not serialised: the plan makes it again.
+    #[cfg_attr(feature = "serde", serde(skip))]
     pub freedom: Freedom,
     /// Spectral segments averaged.
     pub segments: usize,
@@ -325,10 +326,10 @@ impl Tremor {
         }
         let ratio = |what, eye: BandMotion, still: BandMotion| {
             let power = eye.power / still.power;
-            if still.power > 0.0 && power.is_finite() {
-                Ok(MotionRatio { power, rms: power.sqrt() })
-            } else {
-                Err(Error::NoSpread { what })
+            match still.power > 0.0 {
+                false => Err(Error::NoSpread { what }),
+                true if power.is_finite() => Ok(MotionRatio { power, rms: power.sqrt() }),
+                true => Err(Error::Overflow { what: "the ratio to the still eye" }),
             }
         };
         Ok(StillRatio {
