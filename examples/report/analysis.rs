@@ -79,7 +79,9 @@ pub fn analyse(trace: &Trace, still: Option<&Trace>, options: &Options) -> Resul
     let false_alarms = match still {
         Some(still) => false_alarms(criteria, still, &lambdas, LEVEL),
         None => {
-            let (kind, repeats, seed) = (Surrogate::AmplitudeAdjusted, 10, 1);
+            // Two minutes of surrogates, or one of a longer recording.
+            let repeats = (120.0 / trace.duration().max(1.0)).clamp(1.0, 10.0) as usize;
+            let (kind, seed) = (Surrogate::AmplitudeAdjusted, 1);
             false_alarms_by_surrogates(criteria, trace, kind, repeats, seed, &lambdas, LEVEL)
         }
     };
