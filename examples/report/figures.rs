@@ -58,6 +58,14 @@ fn canvas(path: &Path, size: (u32, u32)) -> Result<Canvas<'_>, Box<dyn Error>> {
     Ok(root)
 }
 
+/// Title, margins and room for the axes' labels.
+fn framed<'a, 'b>(root: &'a Canvas<'b>, title: &str) -> ChartBuilder<'a, 'b, SVGBackend<'b>> {
+    let mut chart = ChartBuilder::on(root);
+    chart.caption(title, (FONT, 18).into_font().color(&INK));
+    chart.margin(14).x_label_area_size(44).y_label_area_size(76);
+    chart
+}
+
 /// Both axes over time; events are bands behind the curves, missing samples are breaks in them.
 pub fn trace(
     path: &Path,
@@ -121,12 +129,7 @@ pub fn velocity_plane(
     let finite = |v: &f64| if v.is_finite() { v.abs() } else { 0.0 };
     let reach = velocity.iter().flat_map(|axis| axis.iter().map(finite)).fold(0.0, f64::max);
     let reach = 1.05 * reach.max(1.2 * threshold[0].max(threshold[1]));
-    let mut chart = ChartBuilder::on(&root)
-        .caption(title, (FONT, 18).into_font().color(&INK))
-        .margin(14)
-        .x_label_area_size(44)
-        .y_label_area_size(64)
-        .build_cartesian_2d(-reach..reach, -reach..reach)?;
+    let mut chart = framed(&root, title).build_cartesian_2d(-reach..reach, -reach..reach)?;
     mesh(&mut chart, "horizontal velocity (deg/s)", "vertical velocity (deg/s)")?;
     let [vx, vy] = velocity;
     // One dot a pixel is enough for the cloud.
@@ -174,12 +177,7 @@ pub fn main_sequence(path: &Path, title: &str, amplitude: &[f64], peak: &[f64]) 
         .collect();
     let x = decades(points.iter().map(|p| p.0));
     let y = decades(points.iter().map(|p| p.1));
-    let mut chart = ChartBuilder::on(&root)
-        .caption(title, (FONT, 18).into_font().color(&INK))
-        .margin(14)
-        .x_label_area_size(44)
-        .y_label_area_size(64)
-        .build_cartesian_2d(x.log_scale(), y.log_scale())?;
+    let mut chart = framed(&root, title).build_cartesian_2d(x.log_scale(), y.log_scale())?;
     mesh(&mut chart, "amplitude (arcmin)", "peak velocity (deg/s)")?;
     chart.draw_series(points.into_iter().map(|at| Circle::new(at, 3, BLUE.mix(0.7).filled())))?;
     root.present()?;
@@ -192,12 +190,8 @@ pub fn spectrum(path: &Path, title: &str, band: [f64; 2], curves: &[Curve]) -> D
     let all: Vec<(f64, f64)> = curves.iter().flat_map(Curve::points).collect();
     let x = extent(all.iter().map(|p| p.0));
     let y = decades(all.iter().map(|p| p.1));
-    let mut chart = ChartBuilder::on(&root)
-        .caption(title, (FONT, 18).into_font().color(&INK))
-        .margin(14)
-        .x_label_area_size(44)
-        .y_label_area_size(76)
-        .build_cartesian_2d(x.clone().log_scale(), y.clone().log_scale())?;
+    let mut chart =
+        framed(&root, title).build_cartesian_2d(x.clone().log_scale(), y.clone().log_scale())?;
     let band = [band[0].max(x.start), band[1].min(x.end)];
     if band[0] < band[1] {
         let corners = [(band[0], y.start), (band[1], y.end)];
@@ -216,12 +210,7 @@ pub fn allan(path: &Path, title: &str, curves: &[Curve]) -> Drawn {
     let all: Vec<(f64, f64)> = curves.iter().flat_map(Curve::points).collect();
     let x = extent(all.iter().map(|p| p.0));
     let y = decades(all.iter().map(|p| p.1));
-    let mut chart = ChartBuilder::on(&root)
-        .caption(title, (FONT, 18).into_font().color(&INK))
-        .margin(14)
-        .x_label_area_size(44)
-        .y_label_area_size(76)
-        .build_cartesian_2d(x.log_scale(), y.log_scale())?;
+    let mut chart = framed(&root, title).build_cartesian_2d(x.log_scale(), y.log_scale())?;
     mesh(&mut chart, "averaging time (s)", "overlapping Allan deviation (deg)")?;
     draw_curves(&mut chart, curves, true)?;
     legend(&mut chart, SeriesLabelPosition::LowerLeft)?;
@@ -243,12 +232,7 @@ pub fn false_alarms(
     let y =
         decades(rate.iter().flatten().copied().chain([largest]).filter(|r| *r > 0.2 * smallest));
     let x = spread(lambda.iter().copied().chain(found.map(|found| found.0)));
-    let mut chart = ChartBuilder::on(&root)
-        .caption(title, (FONT, 18).into_font().color(&INK))
-        .margin(14)
-        .x_label_area_size(44)
-        .y_label_area_size(64)
-        .build_cartesian_2d(x, y.clone().log_scale())?;
+    let mut chart = framed(&root, title).build_cartesian_2d(x, y.clone().log_scale())?;
     mesh(&mut chart, "λ", "events a second")?;
     let bars = lambda.iter().zip(rate).map(|(l, [low, _, high])| {
         PathElement::new([(*l, low.max(y.start)), (*l, high.max(y.start))], GREY.stroke_width(2))
@@ -280,11 +264,7 @@ pub fn recovery(
 ) -> Drawn {
     let root = canvas(path, (640, 520))?;
     let x = extent(points.iter().map(|point| point.0));
-    let mut chart = ChartBuilder::on(&root)
-        .caption(title, (FONT, 18).into_font().color(&INK))
-        .margin(14)
-        .x_label_area_size(44)
-        .y_label_area_size(64)
+    let mut chart = framed(&root, title)
         .build_cartesian_2d((x.start / 1.1..x.end * 1.1).log_scale(), -0.02..1.02)?;
     mesh(&mut chart, "amplitude (arcmin)", "share found")?;
     let curve = (0..=200).filter_map(|k| {
