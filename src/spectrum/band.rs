@@ -37,10 +37,11 @@ pub enum BandEdges {
 }
 
 impl Band {
-    /// The band 40–100 Hz, where most ocular tremor is reported.
+    /// The band 40–100 Hz, where ocular tremor is looked for.
     ///
-    /// Tremor peaks at 84 Hz on average and reaches from 20 to 150 Hz (Kenny et al. 2013); below 40 Hz
-    /// drift and the flanks of microsaccades have more power than tremor.
+    /// Reported peaks lie at 84 Hz on average (Kenny et al. 2013), at 60–90 Hz (Spauschus et al. 1999)
+    /// and in a rise over 50–100 Hz (Bowers et al. 2019); below 40 Hz drift and the flanks of
+    /// microsaccades have more power.
     pub const TREMOR: Self = Self { low: 40.0, high: 100.0 };
 
     /// The band from `low` to `high`, Hz.

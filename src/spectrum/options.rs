@@ -144,6 +144,7 @@ impl WelchOptions {
         if !(shortest..=MAX_LENGTH).contains(&segment) {
             return Err(Error::Parameter { name: "segment", value: segment as f64, allowed });
         }
+        self.window.exists(segment)?;
         let fft_length = self.fft_length.unwrap_or(segment);
         if !(segment..=MAX_LENGTH).contains(&fft_length) {
             let allowed = "from the segment's length to 67108864 (2²⁶) samples";

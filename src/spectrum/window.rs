@@ -79,10 +79,7 @@ impl Window {
     /// # Ok::<(), fixational::Error>(())
     /// ```
     pub fn coefficients(self, len: usize) -> Result<Vec<f64>> {
-        if !(2..=MAX_LENGTH).contains(&len) {
-            let allowed = "2 to 67108864 (2²⁶) samples";
-            return Err(Error::Parameter { name: "window length", value: len as f64, allowed });
-        }
+        self.exists(len)?;
         Ok(match self {
             Self::Boxcar => vec![1.0; len],
             Self::Hann => cosine_sum(len, &[0.5, 0.5]),
@@ -93,15 +90,27 @@ impl Window {
                 cosine_sum(len, &[0.21557895, 0.41663158, 0.277263158, 0.083578947, 0.006947368])
             }
             Self::Dpss { nw } => {
-                if !(nw > 0.0 && nw < len as f64 / 2.0) {
-                    let allowed = "0 < nw < half the window length";
-                    return Err(Error::Parameter { name: "nw", value: nw, allowed });
-                }
                 let mut taper = zeroth_taper(len + 1, nw);
                 taper.truncate(len);
                 taper
             }
         })
+    }
+
+    /// The one check of length and bandwidth.
+    pub(super) fn exists(self, len: usize) -> Result<()> {
+        if !(2..=MAX_LENGTH).contains(&len) {
+            let allowed = "2 to 67108864 (2²⁶) samples";
+            return Err(Error::Parameter { name: "window length", value: len as f64, allowed });
+        }
+        match self {
+            // Written so that NaN is refused.
+            Self::Dpss { nw } if !(nw > 0.0 && nw < len as f64 / 2.0) => {
+                let allowed = "0 < nw < half the window length";
+                Err(Error::Parameter { name: "nw", value: nw, allowed })
+            }
+            _ => Ok(()),
+        }
     }
 
     /// Equivalent noise bandwidth of the window at `len` samples, in bins of `rate / len` hertz.
