@@ -162,8 +162,8 @@ pub(crate) mod f_distribution {
     mod tests {
         use super::*;
 
-        /// F₀.₉₅ and `R_min` = F₁₋α(ν₁, ν₀) F₁₋β(ν₀, ν₁), four decimals as printed (methods text, table
-        /// of section 13; derived there), α = 0.05, β = 0.05 and 0.20.
+        /// F₀.₉₅, the handbook table's value to four decimals, and F₁₋α(ν₁, ν₀) F₁₋β(ν₀, ν₁) at α = 0.05,
+        /// β = 0.05 and 0.20, derived from such quantiles.
         #[test]
         fn quantiles_equal_the_printed_table() {
             for (nu_1, nu_0, f95, both, loose) in [
@@ -187,7 +187,7 @@ pub(crate) mod f_distribution {
             }
         }
 
-        /// χ²/ν factors of section 11: ν/χ² at 95 %: 0.720308, 1.482149 for ν = 60.
+        /// ν/χ² at 95 % for ν = 60, from χ² quantiles: 0.720308, 1.482149.
         #[test]
         fn an_infinite_second_number_is_chi_squared() {
             let infinite = f64::INFINITY;
@@ -231,6 +231,54 @@ mod tests {
         let one_sided = Estimate::poisson_rate(0, 60.0, 0.90)?;
         assert!(close(one_sided.upper, 0.049928871225899826), "{}", one_sided.upper);
         Ok(())
+    }
+
+    /// χ² and F against SciPy and multi-precision arithmetic (`tests/reference/quantiles.json`), at
+    /// degrees of freedom from 1 (F: 2) up and tails down to 1e-4: all that an interval here asks for. At
+    /// F(1, 1) and 0.9999, 4e7, the library's tail is right to nine digits only.
+    #[test]
+    fn quantiles_equal_the_library() {
+        let path = concat!(env!("CARGO_MANIFEST_DIR"), "/tests/reference/quantiles.json");
+        let file: serde_json::Value =
+            serde_json::from_str(&std::fs::read_to_string(path).unwrap()).unwrap();
+        let list = |value: &serde_json::Value| -> Vec<f64> {
+            value.as_array().unwrap().iter().map(|v| v.as_f64().unwrap()).collect()
+        };
+        let mut checked = 0;
+        for case in file["cases"].as_array().unwrap() {
+            let relative = case["tolerance"]["relative"].as_f64().unwrap();
+            let ask: Box<dyn Fn(usize, f64) -> Option<f64>> = match case["name"].as_str().unwrap() {
+                "chi_squared_quantile" => {
+                    let dof = list(&case["input"]["dof"]);
+                    Box::new(move |i, p| (dof[i] >= 1.0).then(|| chi_squared_quantile(dof[i], p)))
+                }
+                "f_quantile" => {
+                    let input = &case["input"];
+                    let (one, two) = (list(&input["dof1"]), list(&input["dof2"]));
+                    Box::new(move |i, p| {
+                        let asked = one[i] >= 2.0 && two[i] >= 2.0;
+                        asked.then(|| f_distribution::quantile(one[i], two[i], p))
+                    })
+                }
+                _ => continue,
+            };
+            let p = list(&case["input"]["p"]);
+            for (i, row) in case["expected"]["quantile"].as_array().unwrap().iter().enumerate() {
+                for (&p, expected) in p.iter().zip(list(row)) {
+                    let Some(found) = ask(i, p).filter(|_| (1e-4..=1.0 - 1e-4).contains(&p)) else {
+                        continue;
+                    };
+                    let name = &case["name"];
+                    let off = (found - expected).abs();
+                    assert!(
+                        off <= relative * expected,
+                        "{name} row {i}, p = {p}: {found}, {expected}"
+                    );
+                    checked += 1;
+                }
+            }
+        }
+        assert!(checked > 200, "{checked}");
     }
 
     #[test]
