@@ -104,3 +104,38 @@ fn count(
     };
     lambdas.iter().map(at).collect()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::simulation::Session;
+
+    #[test]
+    fn surrogates_add_their_counts_and_times_up() {
+        let eye = Session::default().duration(6.0).simulate().unwrap().recording;
+        let criteria = MicrosaccadeCriteria::default().min_samples(2);
+        let ask = |repeats, seed| {
+            let kind = Surrogate::Shuffled;
+            false_alarms_by_surrogates(criteria, &eye, kind, repeats, seed, &[2.0], 0.95).unwrap()
+                [0]
+        };
+        let (one, two, both) = (ask(1, 5), ask(1, 6), ask(2, 5));
+        assert!(one.count > 0 && two.count > 0);
+        assert_eq!(both.count, one.count + two.count);
+        assert!((both.searched - one.searched - two.searched).abs() < 1e-9);
+        assert!((both.rate.value - both.count as f64 / both.searched).abs() < 1e-12);
+    }
+
+    #[test]
+    fn bad_settings_are_refused() {
+        let eye = Session::default().duration(3.0).simulate().unwrap().recording;
+        let (criteria, kind) = (MicrosaccadeCriteria::default(), Surrogate::Shuffled);
+        let none = false_alarms_by_surrogates(criteria, &eye, kind, 0, 1, &[6.0], 0.95);
+        assert!(matches!(none, Err(Error::Parameter { name: "repeats", .. })));
+        for lambda in [0.0, -1.0, f64::NAN] {
+            assert!(false_alarms(criteria, &eye, &[lambda], 0.95).is_err());
+        }
+        assert!(false_alarms(criteria, &eye, &[6.0], 1.0).is_err());
+        assert_eq!(false_alarms(criteria, &eye, &[], 0.95), Ok(vec![]));
+    }
+}

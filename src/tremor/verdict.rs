@@ -281,3 +281,52 @@ fn difference(p1: f64, nu_1: f64, p0: f64, nu_0: f64, tail: f64) -> (f64, f64) {
     let beyond = (h1 * p1).powi(2) + (g0 * p0).powi(2) + h10 * p1 * p0;
     (p1 - p0 - below.max(0.0).sqrt(), p1 - p0 + beyond.max(0.0).sqrt())
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// At ν = 60 and 120: F₀.₉₅ = 1.4290, and 2.0967 times the floor is seen in 95 % (derived, four
+    /// decimals).
+    #[test]
+    fn thresholds_equal_the_derived_table() {
+        let judged = judge((1.0, 60.0), (1.0, 120.0), VerdictOptions::default());
+        let excess = |arcsec: f64| (arcsec / 3600.0).powi(2);
+        assert!((excess(judged.decision_threshold_arcsec) - 0.4290).abs() < 5e-5);
+        assert!((excess(judged.detection_limit_arcsec) - 1.0967).abs() < 5e-5);
+        let loose = VerdictOptions::default().miss(0.2);
+        let limit = excess(judge((1.0, 60.0), (1.0, 120.0), loose).detection_limit_arcsec);
+        assert!((limit - 0.7394).abs() < 5e-5, "{limit}");
+
+        // At the critical ratio the p-value is the false-alarm probability; above it is resolved.
+        assert_eq!(
+            judge((1.4289, 60.0), (1.0, 120.0), VerdictOptions::default()).verdict,
+            Verdict::Unresolved
+        );
+        let above = judge((1.4291, 60.0), (1.0, 120.0), VerdictOptions::default());
+        assert_eq!(above.verdict, Verdict::Resolved);
+        assert!((above.p_value - 0.05).abs() < 1e-4);
+    }
+
+    /// Nothing below zero is ever called a movement.
+    #[test]
+    fn an_excess_is_never_negative() {
+        let judged = judge((0.5, 40.0), (1.0, 40.0), VerdictOptions::default());
+        assert_eq!(judged.verdict, Verdict::Unresolved);
+        for estimate in [judged.excess_power, judged.excess_rms_arcsec] {
+            assert!(estimate.value == 0.0 && estimate.lower == 0.0 && estimate.upper >= 0.0);
+        }
+    }
+
+    #[test]
+    fn probabilities_outside_their_domain_are_refused() {
+        let check = |options: VerdictOptions| options.check();
+        for bad in [0.0, 0.5, 1.0, -0.1, f64::NAN] {
+            assert!(check(VerdictOptions::default().false_alarm(bad)).is_err());
+            assert!(check(VerdictOptions::default().miss(bad)).is_err());
+        }
+        for bad in [0.0, 1.0, f64::NAN] {
+            assert!(check(VerdictOptions::default().level(bad)).is_err());
+        }
+    }
+}
