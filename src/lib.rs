@@ -8,8 +8,8 @@
 //! | room | what it answers |
 //! |---|---|
 //! | [`error`], [`estimate`] | what can go wrong; how sure |
-//! | [`statistics`] | what a handful of numbers says |
 //! | [`recording`] | what was recorded |
+//! | [`statistics`] | what a handful of numbers says |
 //! | [`conditioning`] | made fit for analysis |
 //! | [`events`] | what moved, and when |
 //! | [`spectrum`] | how power spreads over frequency |
