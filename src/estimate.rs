@@ -27,9 +27,10 @@ impl Estimate {
     /// rate = n/T,   interval = [ χ²_{α/2}(2n), χ²_{1−α/2}(2n + 2) ] / (2T),   α = 1 − level
     /// ```
     ///
-    /// The interval is exact (it holds the truth at least as often as `level`). With a dead time after
-    /// each event counts vary less than Poisson counts do, and the interval is then too wide, never
-    /// too narrow.
+    /// The interval is exact (it holds the truth at least as often as `level`). With a dead time d after
+    /// each event counts vary less than Poisson counts do, and for the rate of observed events the
+    /// interval is then too wide, never too narrow. The rate r of the process underneath is another
+    /// quantity, r/(1 − r·d), which this interval does not hold.
     ///
     /// # Errors
     /// [`Error::Parameter`] unless `seconds` is finite and above zero and `0 < level < 1`.
@@ -304,7 +305,8 @@ mod tests {
     }
 
     /// χ² and F against SciPy and multi-precision arithmetic (`tests/reference/quantiles.json`), at
-    /// degrees of freedom from 1 up and tails down to 1e-4: all that an interval here asks for.
+    /// degrees of freedom from 1 up and tails down to 1e-4. The file goes on to 0.5 and 1e-6; what lies
+    /// beyond is not checked here.
     #[test]
     fn quantiles_equal_the_library() {
         let path = concat!(env!("CARGO_MANIFEST_DIR"), "/tests/reference/quantiles.json");

@@ -18,7 +18,7 @@ fn replicates() -> usize {
     if full { 4000 } else { 2000 }
 }
 
-/// A share and how far it may stray by chance: 3.3 standard errors.
+/// The share of hits must lie in the range that was stated beforehand.
 #[track_caller]
 fn check_share(what: &str, hits: usize, of: usize, range: std::ops::RangeInclusive<f64>) {
     let share = hits as f64 / of as f64;
